@@ -1,0 +1,48 @@
+"""The record of one object as inference sees it."""
+
+from dataclasses import dataclass, field
+
+import numpy as np
+
+__all__ = ["Pulsar"]
+
+
+@dataclass(frozen=True, kw_only=True)
+class Pulsar:
+    """One object's measurements, in internal units; nan where a quantity was not given.
+
+    Attributes
+    ----------
+    name : str
+        Name, unique in its table.
+    period, period_err : float
+        Spin period and its error [s].
+    period_derivative, period_derivative_err : float
+        Period derivative and its error [s/s].
+    braking_index : float
+        Observed braking index n = nu nuddot / nudot^2.
+    braking_index_err_minus, braking_index_err_plus : float
+        Quoted one-sigma errors below and above, both positive.
+    braking_index_limit : float
+        Upper limit on n, for an object without a measured index.
+    flags : tuple of str
+        Remarks of the reader, such as ``"old"`` for a characteristic age beyond the cooling fits.
+    """
+
+    name: str
+    period: float
+    period_derivative: float
+    period_err: float = np.nan
+    period_derivative_err: float = np.nan
+    braking_index: float = np.nan
+    braking_index_err_minus: float = np.nan
+    braking_index_err_plus: float = np.nan
+    braking_index_limit: float = np.nan
+    flags: tuple[str, ...] = field(default=())
+
+    @property
+    def characteristic_age(self) -> float:
+        """Characteristic age tau_c = P / (2 Pdot) [yr]."""
+        from decayinfer.physics.torque import characteristic_age
+
+        return float(characteristic_age(self.period, self.period_derivative))
