@@ -3,12 +3,15 @@
 Physical constants are CODATA and IAU values as astropy ships them (`astropy.constants`); a test compares.
 """
 
+import numpy as np
+
 __all__ = [
     "B_UNIT_G",
     "C_CGS",
     "ELEMENTARY_CHARGE_ESU",
     "G_CGS",
     "HBAR_CGS",
+    "INERTIA_UNIT_CGS",
     "KM_CM",
     "K_B_CGS",
     "M_SUN_G",
@@ -28,3 +31,5 @@ M_SUN_G = 1.98840987e33  #: solar mass [g] (IAU 2015 GM_sun over CODATA 2018 G)
 KM_CM = 1e5  #: kilometre [cm]
 T_UNIT_K = 1e8  #: internal unit of temperature [K]
 B_UNIT_G = 1e12  #: internal unit of field [G]
+#: unit of moments of inertia [g cm^2]; typed, because PyTensor would try a bare literal in single precision
+INERTIA_UNIT_CGS = np.float64(1e45)

@@ -1,7 +1,7 @@
 """Choose NumPy or PyTensor by what a formula is given, so that each formula is written once.
 
 Write constants as plain numbers or take them from NumPy: PyTensor evaluates ``pt.log(10.0)`` in single
-precision, because it stores a bare literal in the smallest type that holds it.
+precision, because it stores a bare literal in the smallest type that holds it; one beyond single range warns.
 """
 
 from importlib import import_module

@@ -1,6 +1,6 @@
 """Compactness, gravity, redshift and moment of inertia from mass [M_sun] and radius [km]."""
 
-from decayinfer.physics.constants import C_CGS, G_CGS, KM_CM, M_SUN_G
+from decayinfer.physics.constants import C_CGS, G_CGS, INERTIA_UNIT_CGS, KM_CM, M_SUN_G
 from decayinfer.physics.namespace import Value, namespace
 
 __all__ = [
@@ -49,4 +49,4 @@ def moment_of_inertia_ls_45(mass: Value, radius_km: Value) -> Value:
 
 
 def _mr2_45(mass: Value, radius_km: Value) -> Value:
-    return M_SUN_G * KM_CM**2 / 1e45 * mass * radius_km**2
+    return M_SUN_G * KM_CM**2 / INERTIA_UNIT_CGS * mass * radius_km**2

@@ -9,7 +9,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from decayinfer.physics.constants import B_UNIT_G, C_CGS, KM_CM, YEAR_S
+from decayinfer.physics.constants import B_UNIT_G, C_CGS, INERTIA_UNIT_CGS, KM_CM, YEAR_S
 from decayinfer.physics.namespace import Value, namespace
 
 __all__ = [
@@ -70,7 +70,7 @@ def spin_down_constant(
         C = 4 pi^2 R^6 (k0 + k1 sin^2 a)/(c^3 I) [s per (1e12 G)^2], for the equatorial field.
     """
     radius = radius_km * KM_CM
-    return 4.0 * np.pi**2 * B_UNIT_G**2 / C_CGS**3 * torque * radius**6 / (inertia_45 * 1e45)
+    return 4.0 * np.pi**2 * B_UNIT_G**2 / C_CGS**3 * torque * radius**6 / (inertia_45 * INERTIA_UNIT_CGS)
 
 
 def dipole_field(
@@ -98,7 +98,7 @@ def dipole_field(
 
 def spin_down_luminosity(period: Value, period_derivative: Value, *, inertia_45: Value = 1.0) -> Value:
     """Return 4 pi^2 I Pdot/P^3 [erg/s] for a moment of inertia in 1e45 g cm^2."""
-    return 4.0 * np.pi**2 * 1e45 * inertia_45 * period_derivative / period**3
+    return 4.0 * np.pi**2 * INERTIA_UNIT_CGS * inertia_45 * period_derivative / period**3
 
 
 def decay_rate(braking_index: Value, characteristic_age: Value) -> Value:
@@ -107,8 +107,9 @@ def decay_rate(braking_index: Value, characteristic_age: Value) -> Value:
 
 
 def decay_time(braking_index: Value, characteristic_age: Value) -> Value:
-    """Return 4 tau_c/(n - 3) [yr], the e-folding time of the field; negative for n < 3, undefined at 3."""
-    return 4.0 * characteristic_age / (braking_index - 3.0)
+    """Return 4 tau_c/(n - 3) [yr], the e-folding time of the field; negative for n < 3, infinite at 3."""
+    with np.errstate(divide="ignore"):
+        return 4.0 * characteristic_age / (braking_index - np.float64(3.0))
 
 
 def braking_index(decay_rate: Value, characteristic_age: Value) -> Value:
