@@ -4,6 +4,9 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
+from decayinfer.physics import torque
+from decayinfer.physics.constants import B_UNIT_G
+
 __all__ = ["Pulsar"]
 
 
@@ -43,6 +46,21 @@ class Pulsar:
     @property
     def characteristic_age(self) -> float:
         """Characteristic age tau_c = P / (2 Pdot) [yr]."""
-        from decayinfer.physics.torque import characteristic_age
+        return float(torque.characteristic_age(self.period, self.period_derivative))
 
-        return float(characteristic_age(self.period, self.period_derivative))
+    @property
+    def dipole_field(self) -> float:
+        """Equatorial field of an orthogonal rotator in vacuum, R = 10 km, I = 1e45 g cm^2 [G]."""
+        return float(torque.dipole_field(self.period, self.period_derivative)) * B_UNIT_G
+
+    @property
+    def braking_index_err(self) -> float:
+        """Mean of the errors below and above."""
+        return 0.5 * self.braking_index_err_minus + 0.5 * self.braking_index_err_plus
+
+    @property
+    def decay_time(self) -> float:
+        """Time 4 tau_c/(n - 3) in which the field falls by e if decay alone makes n [yr]; nan for n <= 3."""
+        if not self.braking_index > 3.0:
+            return np.nan
+        return float(torque.decay_time(self.braking_index, self.characteristic_age))
