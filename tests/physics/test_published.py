@@ -72,7 +72,10 @@ def test_j1640_4631_decay_time():
 
 
 def test_j1846_0258_change_of_index():
-    """Published: 2.65(1) became 2.19(3), 14.5 sigma. Frequencies and citation (Archibald et al. 2015) from memory."""
+    """Published: n went from 2.65(1) to 2.19(3), by 14.5 sigma.
+
+    The frequencies and the citation, Archibald et al. 2015, are from memory.
+    """
     nu, nudot = 3.0621, -6.664e-11
     unit = nudot**2 / nu
     change = index_from_frequency(nu, nudot, 2.19 * unit) - index_from_frequency(nu, nudot, 2.65 * unit)
