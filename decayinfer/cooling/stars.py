@@ -129,7 +129,7 @@ def _integrate(eos: EquationOfState, rho_c: Array) -> tuple[Array, Array, Array,
     """
     h_c = eos.enthalpy_at(rho_c)
     ds = 1 / _STEPS
-    s = np.arange(_STEPS + 1) * ds
+    s = np.linspace(0, 1, _STEPS + 1)
     y = np.zeros((_STEPS + 1, 3, rho_c.size))
     y[1] = _series(eos, rho_c, h_c, ds)
 
