@@ -139,7 +139,7 @@ def test_attractor_ends_the_drift(forward):
 def test_steps_agree_with_the_adaptive_solver(forward, channel, law):
     sample = random_draws(forward, 6, seed=len(channel))
     options = {"channel": channel, "law": FREEZE_OUT[law]}
-    fast = forward.evolve(sample, cooling_star(), steps=400, **options)
+    fast = forward.evolve(sample, cooling_star(), steps=600, **options)
     for i in range(6):
         exact = forward.evolve_one(sample[i], cooling_star(), **options)
         for name in ("field", "period", "period_derivative", "braking_index"):
