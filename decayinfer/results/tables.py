@@ -1,0 +1,201 @@
+"""The three tables of a run: their columns, units and descriptions, and their bytes.
+
+Numbers are written with ten significant digits, nothing in a table tells the time, and rows follow the order
+of the input, the scenarios and the channels. So the same draws give the same bytes.
+"""
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+from io import BytesIO, StringIO
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from decayinfer.errors import InputError, RunFolderError
+from decayinfer.results.files import write_whole
+
+if TYPE_CHECKING:
+    from astropy.table import Table
+
+    from decayinfer.results.summary import ObjectRows
+
+__all__ = [
+    "CHANNEL_COLUMNS",
+    "PARAMETER_COLUMNS",
+    "Column",
+    "object_columns",
+    "save_table",
+    "to_ecsv",
+    "to_table",
+    "write_tables",
+]
+
+#: Significant digits of every number in a table.
+DIGITS = 10
+
+
+@dataclass(frozen=True)
+class Column:
+    """A column of a table.
+
+    Attributes
+    ----------
+    name, description : str
+        Its name and what it holds.
+    unit : str
+        Astropy unit string; empty when dimensionless.
+    kind : type
+        ``str``, ``int`` or ``float``.
+    """
+
+    name: str
+    description: str
+    unit: str = ""
+    kind: type = float
+
+
+_LABELS = (
+    Column("object", "name of the object", kind=str),
+    Column("scenario", "cooling scenario, or averaged", kind=str),
+    Column("channel", "channel, or averaged", kind=str),
+)
+
+#: Columns of channels.ecsv.
+CHANNEL_COLUMNS = (
+    *_LABELS,
+    Column("ln_evidence", "ln p(n | P, Pdot, channel, scenario)"),
+    Column("ln_evidence_err", "standard error of ln_evidence"),
+    Column("ln_evidence_joint", "ln p(n, ln P, ln Pdot | channel, scenario)"),
+    Column("probability", "probability of this channel and scenario among those of the object"),
+    Column("ess_bulk_min", "smallest bulk effective sample size over the sampled coordinates"),
+    Column("r_hat_max", "largest R-hat over the sampled coordinates"),
+    Column("divergences", "divergent transitions among the kept draws", kind=int),
+    Column("status", "ok, unreachable or failed", kind=str),
+    Column("ln_evidence_joint_err", "standard error of ln_evidence_joint"),
+    Column("probability_err", "Monte Carlo standard error of probability"),
+    Column("ess_tail_min", "smallest tail effective sample size over the sampled coordinates"),
+    Column("flags", "flags, separated by commas", kind=str),
+    Column("reason", "why the status is not ok", kind=str),
+)
+
+#: Columns of parameters.ecsv; values are in the unit of the row.
+PARAMETER_COLUMNS = (
+    *_LABELS,
+    Column("parameter", "name of the parameter", kind=str),
+    Column("unit", "unit of the row's values; empty when dimensionless", kind=str),
+    Column("prior_q05", "5 % quantile given P and Pdot but not n"),
+    Column("prior_q50", "median given P and Pdot but not n"),
+    Column("prior_q95", "95 % quantile given P and Pdot but not n"),
+    Column("mean", "posterior mean"),
+    Column("sd", "posterior standard deviation"),
+    Column("q05", "5 % quantile of the posterior"),
+    Column("q16", "16 % quantile of the posterior"),
+    Column("q50", "median of the posterior"),
+    Column("q84", "84 % quantile of the posterior"),
+    Column("q95", "95 % quantile of the posterior"),
+    Column("ess_bulk", "bulk effective sample size"),
+    Column("r_hat", "R-hat"),
+    Column("share", "share of the averaged probability over which the parameter is defined"),
+)
+
+
+def object_columns(channels: Iterable[str]) -> tuple[Column, ...]:
+    """Return the columns of objects.ecsv for the channels of a run."""
+    return (
+        Column("object", "name of the object", kind=str),
+        Column("characteristic_age", "P / (2 Pdot)", "yr"),
+        Column("braking_index", "observed braking index n"),
+        Column("err_minus", "quoted error of n below"),
+        Column("err_plus", "quoted error of n above"),
+        Column("limit", "upper limit on n"),
+        Column("best_channel", "most probable channel", kind=str),
+        Column("best_probability", "probability of the most probable channel, over all scenarios"),
+        Column("best_probability_err", "Monte Carlo standard error of best_probability"),
+        *(Column(f"probability_{c}", f"probability of {c}, over all scenarios") for c in channels),
+        *_interval_columns("mass", "mass, averaged over channels and scenarios", "Msun"),
+        *_interval_columns("mass_prior", "mass given P and Pdot but not n", "Msun"),
+        *_interval_columns("phonon_time", "phonon time at 1e8 K, averaged where phonons act", "yr"),
+        Column("verdict", "the answer in plain words", kind=str),
+        Column("flags", "flags, separated by commas", kind=str),
+    )
+
+
+def _interval_columns(name: str, what: str, unit: str) -> tuple[Column, ...]:
+    levels = (("q05", "5 % quantile"), ("q50", "median"), ("q95", "95 % quantile"))
+    return tuple(Column(f"{name}_{key}", f"{level} of the {what}", unit) for key, level in levels)
+
+
+def to_table(rows: Sequence[dict[str, Any]], columns: Sequence[Column]) -> "Table":
+    """Return rows as an astropy table with units and descriptions."""
+    from astropy.table import Column as AstropyColumn
+    from astropy.table import Table
+
+    return Table(
+        [
+            AstropyColumn(
+                data=_values([row[c.name] for row in rows], c.kind),
+                name=c.name,
+                description=c.description,
+                unit=c.unit or None,
+            )
+            for c in columns
+        ]
+    )
+
+
+def _values(values: list[Any], kind: type) -> np.ndarray[Any, Any]:
+    if kind is float:
+        return np.array([float(f"{float(value):.{DIGITS}g}") for value in values])
+    return np.array(values, dtype=kind)
+
+
+def to_ecsv(table: "Table") -> str:
+    """Return a table as ECSV text."""
+    text = StringIO()
+    table.write(text, format="ascii.ecsv")
+    return text.getvalue()
+
+
+def save_table(table: "Table", path: Path) -> None:
+    """Write a table in the format of the path's ending: .ecsv, .csv, .fits, .xml or .vot.
+
+    Raises
+    ------
+    InputError
+        If the ending stands for no format.
+    RunFolderError
+        If the file exists already or cannot be written.
+    """
+    formats = {
+        ".ecsv": "ascii.ecsv",
+        ".csv": "ascii.csv",
+        ".fits": "fits",
+        ".xml": "votable",
+        ".vot": "votable",
+    }
+    if path.suffix.lower() not in formats:
+        raise InputError(f"{path} must end in one of {', '.join(formats)} to tell its format")
+    if path.exists():
+        raise RunFolderError(f"{path} exists already; delete it or choose another name")
+    kind = formats[path.suffix.lower()]
+    content: Any = StringIO() if kind.startswith("ascii") else BytesIO()
+    table.write(content, format=kind)
+    write_whole(path, content.getvalue())
+
+
+def write_tables(folder: Path, rows: Sequence["ObjectRows"], channels: Sequence[str]) -> None:
+    """Write objects.ecsv, channels.ecsv and parameters.ecsv into a run folder.
+
+    Raises
+    ------
+    RunFolderError
+        If a table cannot be written.
+    """
+    channel_rows = [row for each in rows for row in each.channels]
+    parameter_rows = [row for each in rows for row in each.parameters]
+    write_whole(folder / "parameters.ecsv", to_ecsv(to_table(parameter_rows, PARAMETER_COLUMNS)))
+    write_whole(folder / "channels.ecsv", to_ecsv(to_table(channel_rows, CHANNEL_COLUMNS)))
+    write_whole(
+        folder / "objects.ecsv", to_ecsv(to_table([r.objects for r in rows], object_columns(channels)))
+    )

@@ -1,0 +1,142 @@
+"""The answer for one object in plain words."""
+
+from dataclasses import dataclass
+from enum import StrEnum
+
+import numpy as np
+
+from decayinfer.inference.outcome import ChannelFit, Status
+from decayinfer.results.average import Probabilities
+
+__all__ = ["Constraint", "Interval", "constraint", "verdict"]
+
+#: A posterior this wide or wider, relative to its prior, counts as the prior's width.
+AS_WIDE = 0.9
+
+#: A posterior at most this wide, relative to its prior, counts as a measurement.
+NARROW = 0.5
+
+#: Shift of the median, in widths of the prior interval, from which a posterior counts as moved. For a normal
+#: prior it is 0.33 standard deviations.
+MOVED = 0.1
+
+#: Odds below which no channel is called ahead (the lowest step of the scale in Kass & Raftery 1995,
+#: J. Am. Stat. Assoc. 90, 773; from memory).
+CLOSE_ODDS = 3.0
+
+
+@dataclass(frozen=True)
+class Interval:
+    """The 5, 50 and 95 per cent quantiles of a posterior or a prior; nan where there is none."""
+
+    q05: float = np.nan
+    q50: float = np.nan
+    q95: float = np.nan
+
+    @property
+    def width(self) -> float:
+        """Width of the 90 per cent interval."""
+        return self.q95 - self.q05
+
+
+class Constraint(StrEnum):
+    """What the data did to a parameter."""
+
+    NONE = "none"
+    MOVED = "moved"
+    WEAK = "weak"
+    STRONG = "strong"
+    UNKNOWN = "unknown"
+
+
+def constraint(posterior: Interval, prior: Interval) -> Constraint:
+    """Judge by width and place of the 90 per cent intervals what the data did to a parameter."""
+    if not (np.isfinite(posterior.width) and prior.width > 0):
+        return Constraint.UNKNOWN
+    ratio = posterior.width / prior.width
+    if ratio <= NARROW:
+        return Constraint.STRONG
+    if ratio < AS_WIDE:
+        return Constraint.WEAK
+    moved = abs(posterior.q50 - prior.q50) >= MOVED * prior.width
+    return Constraint.MOVED if moved else Constraint.NONE
+
+
+def verdict(probabilities: Probabilities, mass: Interval, mass_prior: Interval) -> str:
+    """Say in plain words which channel leads, by what odds, and what is learnt of the mass.
+
+    Parameters
+    ----------
+    probabilities : Probabilities
+        Probabilities over the object's posterior runs.
+    mass, mass_prior : Interval
+        Averaged posterior of the mass, and its prior given P and Pdot [Msun].
+
+    Returns
+    -------
+    str
+        Clauses separated by semicolons.
+    """
+    if not probabilities.known:
+        return _no_channel(probabilities.fits)
+    clauses = [
+        _channel_clause(probabilities),
+        _failed_clause(probabilities.fits),
+        _mass_clause(mass, mass_prior),
+    ]
+    return "; ".join(clause for clause in clauses if clause)
+
+
+def _no_channel(fits: tuple[ChannelFit, ...]) -> str:
+    unreachable = [fit for fit in fits if fit.status is Status.UNREACHABLE]
+    if not unreachable:
+        return "no posterior run succeeded; see the reasons in channels.ecsv and log.txt"
+    start = (
+        "no channel reaches this index"
+        if len(unreachable) == len(fits)
+        else "no channel that ran reaches this index"
+    )
+    reasons = {fit.reason for fit in unreachable if fit.reason}
+    return f"{start}: {reasons.pop()}" if len(reasons) == 1 else start
+
+
+def _channel_clause(probabilities: Probabilities) -> str:
+    channels = list(dict.fromkeys(fit.channel for fit in probabilities.fits))
+    chances = [(probabilities.of_channel(channel)[0], channel) for channel in channels]
+    ranked = sorted(((p, channel) for p, channel in chances if p > 0), key=lambda item: -item[0])
+    (p, best), *others = ranked
+    if len(channels) == 1:
+        return f"{best} is the only channel fitted"
+    if not others:
+        return f"{best} is the only channel that reaches the index"
+    ratio = p / others[0][0]
+    close = ", too close to call" if ratio < CLOSE_ODDS else ""
+    return f"{best} most probable ({p:.2f}), odds {_odds(ratio)} over {others[0][1]}{close}"
+
+
+def _odds(ratio: float) -> str:
+    if ratio >= 1000:
+        return "above 1000:1"
+    return f"{ratio:.1f}:1" if ratio < 10 else f"{ratio:.0f}:1"
+
+
+def _failed_clause(fits: tuple[ChannelFit, ...]) -> str:
+    failed = sum(fit.status is Status.FAILED for fit in fits)
+    return f"{failed} of {len(fits)} posterior runs failed and are left out" if failed else ""
+
+
+def _mass_clause(mass: Interval, prior: Interval) -> str:
+    kind = constraint(mass, prior)
+    if kind is Constraint.UNKNOWN:
+        return ""
+    if kind is Constraint.NONE:
+        return "the index does not constrain the mass (posterior as wide as its prior)"
+    if kind is Constraint.MOVED:
+        direction = "up" if mass.q50 > prior.q50 else "down"
+        return (
+            f"the index moves the mass {direction} without narrowing it "
+            f"(median {mass.q50:.2f}, prior {prior.q50:.2f} Msun)"
+        )
+    verb = "constrains the mass to" if kind is Constraint.STRONG else "narrows the mass a little, to"
+    share = 100 * mass.width / prior.width
+    return f"the index {verb} {mass.q05:.2f}-{mass.q95:.2f} Msun ({share:.0f} % of the prior's width)"
