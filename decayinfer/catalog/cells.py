@@ -2,6 +2,7 @@
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from decimal import Decimal
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -16,7 +17,15 @@ if TYPE_CHECKING:
 
 __all__ = ["Cells", "names_of", "read_cells"]
 
-_BLANK = {"", "nan", "na", "n/a", "none", "null", "-", "--", "...", "*", "<na>"}  # text that means no value
+_BLANK = {"", "nan", "na", "n/a", "none", "null", "-", "--", "...", "*", "<na>"}
+_NUMERIC = (
+    str,
+    int,
+    float,
+    Decimal,
+    np.integer,
+    np.floating,
+)  # what may be turned into a float  # text that means no value
 
 
 @dataclass(frozen=True)
@@ -135,7 +144,7 @@ def _number(cell: Any) -> float | None:
         cell = _text(cell).strip()
         if cell.casefold() in _BLANK:
             return np.nan
-    if isinstance(cell, bool | np.bool_):
+    if not isinstance(cell, _NUMERIC) or isinstance(cell, bool | np.timedelta64):  # both pass as integers
         return None
     try:
         return float(cell)

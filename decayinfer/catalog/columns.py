@@ -1,6 +1,6 @@
 """The columns a table may have, and how a user's own names map to them."""
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Collection, Iterable, Mapping, Sequence
 from difflib import get_close_matches
 
 from decayinfer.errors import InputError
@@ -130,12 +130,16 @@ def _need_one(
     if complete:
         return complete
     missing = list(dict.fromkeys(name for group in groups for name in group if name not in mapped))
-    wanted = ", or ".join(" with ".join(group) for group in groups)
-    raise InputError(f"{source}: the table needs column {wanted}; " + _what_is_there(missing, found))
+    wanted = ", or ".join(first + (f" with {' and '.join(rest)}" if rest else "") for first, *rest in groups)
+    raise InputError(
+        f"{source}: the table needs column {wanted}; " + _what_is_there(missing, found, set(mapped.values()))
+    )
 
 
-def _what_is_there(missing: Sequence[str], found: Sequence[str]) -> str:
-    pairs = ((name, nearest(name, found)) for name in missing)
+def _what_is_there(missing: Sequence[str], found: Sequence[str], taken: Collection[str] = ()) -> str:
+    """List the columns of a table, and which of those not taken are spelt like the missing ones."""
+    free = [name for name in found if name not in taken]
+    pairs = ((name, nearest(name, free)) for name in missing)
     hints = [f"{theirs!r} for {ours}" for ours, theirs in pairs if theirs]
     near = f" (nearest: {', '.join(hints)})" if hints else ""
     return (

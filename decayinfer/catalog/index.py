@@ -1,6 +1,6 @@
 """Braking index of every row: given, from the second derivative, or an upper limit."""
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from typing import NamedTuple
 
 import numpy as np
@@ -84,14 +84,9 @@ def read_index(cells: Mapping[str, Cells], frequency: Spin, ledger: Ledger) -> I
     err_minus, err_plus = (np.where(use_second, derived_err, side) for side in (minus, plus))
     measured = np.isfinite(value)
     _check_limit(limit, measured, ledger)
-    _check_size(second if n.raw is None else n, value, 0.5 * err_minus + 0.5 * err_plus, ledger)
-    ledger.refuse(
-        ~ledger.aside & ~measured & ~limit.given,
-        n,
-        "there must be an index, a second derivative or an upper limit to fit",
-        "fill one of them or remove the row",
-        lambda _: "nothing to fit",
-    )
+    for source, rows in ((n, n.given), (second, use_second)):
+        _check_size(source, rows, value, 0.5 * err_minus + 0.5 * err_plus, ledger)
+    _check_any((n, second, limit), ledger)
     return Index(value, err_minus, err_plus, np.where(measured, np.nan, limit.values))
 
 
@@ -99,14 +94,13 @@ def _side(cells: Mapping[str, Cells], side: str, ledger: Ledger) -> Floats:
     """Return the error on one side of a given n: its own column first, then the symmetric one."""
     needed = cells["braking_index"].given
     own, both = cells[f"braking_index_err_{side}"], cells["braking_index_err"]
-    _check_error(own, needed, ledger)
+    blame = both if own.raw is None else own
+    if side == "minus" or blame is own:  # what both sides share is blamed once
+        rule, remedy = "must be given where there is a braking index", "fill the cell or blank the index"
+        ledger.refuse(needed & own.absent & both.absent, blame, rule, remedy)
     if side == "minus":
         _check_error(both, needed & _one_sided(cells), ledger)
-    missing = needed & own.absent & both.absent
-    blame = both if own.raw is None else own
-    ledger.refuse(
-        missing, blame, "must be given where there is a braking index", "fill the cell or blank the index"
-    )
+    _check_error(own, needed, ledger)
     return np.where(own.given, own.values, both.values)
 
 
@@ -180,9 +174,20 @@ def _check_limit(limit: Cells, measured: Rows, ledger: Ledger) -> None:
     ledger.flag(rows, limit, "value-ignored", rule, "the measured index was used; blank one of the two")
 
 
-def _check_size(cells: Cells, value: Floats, err: Floats, ledger: Ledger) -> None:
+def _check_any(sources: Sequence[Cells], ledger: Ledger) -> None:
+    nothing = np.logical_and.reduce([cells.absent for cells in sources])
+    ledger.refuse(
+        nothing,
+        next(cells for cells in sources if cells.raw is not None),
+        "there must be an index, a second derivative or an upper limit",
+        "fill one of them or remove the row",
+        lambda _: "nothing to fit",
+    )
+
+
+def _check_size(cells: Cells, rows: Rows, value: Floats, err: Floats, ledger: Ledger) -> None:
     with np.errstate(all="ignore"):
-        rows = ~ledger.aside & (err > np.maximum(np.abs(value), _LARGE))
+        rows = rows & ~ledger.aside & (err > np.maximum(np.abs(value), _LARGE))
 
     def got(row: int) -> str:
         return f"{value[row]:.4g} +- {err[row]:.4g}"

@@ -1,10 +1,12 @@
 """From a file or an object in memory to an astropy Table."""
 
+import csv
 import gzip
 import sys
 import warnings
 import zlib
-from collections.abc import Callable
+from collections import Counter
+from collections.abc import Callable, Sequence
 from io import BytesIO
 from os import PathLike, fspath
 from pathlib import Path
@@ -64,13 +66,11 @@ def _guarded(label: str, action: "Callable[[], Table]") -> tuple["Table", tuple[
         warnings.simplefilter("always")
         try:
             table = action()
-        except InputError:
-            raise
         except Exception as error:  # what readers raise on broken files is not documented
             reason = " ".join(str(error).split())[:300] or type(error).__name__
             raise InputError(
                 f"{label}: the table cannot be read ({reason}); "
-                "remedy: check that the content is what the ending of the file says"
+                "remedy: correct it, or write it in another format"
             ) from error
     remarks = (
         " ".join(str(w.message).split()) for w in caught if not issubclass(w.category, ResourceWarning)
@@ -107,6 +107,8 @@ def _csv(data: bytes, text_column: str) -> "Table":
     text = data.decode("utf-8-sig") + "\n"  # the line break tells astropy that this is content, not a path
     if text.startswith("# %ECSV"):
         return Table.read(text, format="ascii.ecsv")
+    lines = (line for line in text.splitlines() if line.strip() and not line.lstrip().startswith("#"))
+    _check_distinct([name.strip() for name in next(csv.reader(lines), [])])
     return Table.read(text, format="ascii.csv", comment="#", converters={text_column: str})
 
 
@@ -127,7 +129,7 @@ def _votable(data: bytes, _: str) -> "Table":
 
     tables = list(parse(BytesIO(data)).iter_tables())
     if not tables:
-        raise InputError("it holds no table")
+        raise ValueError("it holds no table")
     if len(tables) > 1:
         warnings.warn(f"the file holds {len(tables)} tables; the first was read", UserWarning, stacklevel=2)
     return tables[0].to_table(use_names_over_ids=True)
@@ -165,9 +167,11 @@ def _from_pandas(frame: Any) -> "Table":
     if index.names != [None] or index.dtype.kind not in "iu":  # plain row numbers are no data
         frame = frame.reset_index()
     names = [str(name) for name in frame.columns]
-    repeated = sorted({name for name in names if names.count(name) > 1})
-    if repeated:
-        raise InputError(
-            f"DataFrame: column names must differ, got {', '.join(map(repr, repeated))} more than once"
-        )
+    _check_distinct(names)
     return Table.from_pandas(frame.set_axis(names, axis=1))
+
+
+def _check_distinct(names: Sequence[str]) -> None:
+    repeated = [name for name, count in Counter(names).items() if count > 1]
+    if repeated:
+        raise ValueError(f"column names must differ, got {', '.join(map(repr, repeated))} more than once")

@@ -74,9 +74,9 @@ def read_table(
             "", "the reader should have no remarks", remark, "correct the file if the remark matters"
         )
     _remark_columns(table.colnames, mapped, unused, ledger)
-    _check_names(mapped["name"], ledger)
     period, frequency = read_spin(cells, ledger)
     index = read_index(cells, frequency, ledger)
+    _check_names(mapped["name"], ledger)
     kept = np.flatnonzero(~ledger.aside).tolist()
     pulsars = tuple(_pulsar(row, period, index, ledger) for row in kept)
     return Catalog(label, pulsars, ledger.problems(), table, tuple(row + 1 for row in kept), mapped)
