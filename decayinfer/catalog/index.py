@@ -78,7 +78,8 @@ def read_index(cells: Mapping[str, Cells], frequency: Spin, ledger: Ledger) -> I
         derived, derived_err = index_and_error(frequency, second.values, second_err)
     use_second = ~n.given & second.given
     _check_numbers(n, second, limit, ledger)
-    _check_derived(second, use_second & ~(np.isfinite(derived) & (derived_err > 0)), derived, ledger)
+    sound = np.isfinite(derived) & np.isfinite(derived_err) & (derived_err > 0)
+    _check_derived(second, use_second & ~sound, derived, ledger)
     _check_mismatch(n, minus, plus, derived, derived_err, ledger)
     value = np.where(use_second, derived, n.values)
     err_minus, err_plus = (np.where(use_second, derived_err, side) for side in (minus, plus))

@@ -122,8 +122,9 @@ def test_with_an_index_given_a_broken_second_derivative_does_no_harm(one, value,
     assert catalog.pulsars[0].flags == ("value-ignored",)
 
 
-def test_a_second_derivative_that_overflows(one):
-    cells = {"frequency_second_derivative": 1e300, "frequency_second_derivative_err": 1e299}
+@pytest.mark.parametrize(("second", "err"), [(1e300, 1e299), (1.2e-24, 1e300)])
+def test_a_second_derivative_beyond_floating_point(one, second, err):
+    cells = {"frequency_second_derivative": second, "frequency_second_derivative_err": err}
     assert "finite braking index" in refused(one(**NO_INDEX, **cells), "frequency_second_derivative").rule
 
 
