@@ -4,12 +4,8 @@ from typing import Any
 
 import pytest
 from astropy.table import Table
-from hypothesis.configuration import set_hypothesis_home_dir
 
 from decayinfer.catalog import Catalog, read_table
-
-# A .hypothesis folder where pytest looks for tests draws a warning, and warnings are errors here.
-set_hypothesis_home_dir(Path(__file__).parents[2] / ".pytest_cache" / "hypothesis")
 
 DATA = Path(__file__).parents[1] / "data"
 
