@@ -45,24 +45,30 @@ class Layout:
         Branch (0 slow, 1 fast) and name of each row of the coefficient table; all its polynomial moves.
     scalars : tuple of str
         Scalars that move.
+    degrees : (int, int)
+        Degree in mass of the rows of the slow and of the fast branch; the fast one rules over half the
+        masses, and a polynomial of full degree would swing wildly over the other half.
     """
 
     rows: tuple[tuple[int, str], ...]
     scalars: tuple[str, ...] = ()
+    degrees: tuple[int, int] = (form.DEGREE, form.DEGREE)
 
     def pack(self, table: Array, scalars: Array) -> Array:
         """Vector of the moving coefficients."""
-        parts = [table[branch, _ROW[name]] for branch, name in self.rows]
+        parts = [table[branch, _ROW[name], : self.degrees[branch] + 1] for branch, name in self.rows]
         parts += [self._coded(name, scalars[_SCALAR[name]]) for name in self.scalars]
         return np.concatenate(parts)
 
     def unpack(self, vector: Array, table: Array, scalars: Array) -> tuple[Array, Array]:
         """Copies of table and scalars with the moving coefficients replaced."""
         table, scalars = table.copy(), scalars.copy()
-        width = form.DEGREE + 1
-        for i, (branch, name) in enumerate(self.rows):
-            table[branch, _ROW[name]] = vector[i * width : (i + 1) * width]
-        for name, value in zip(self.scalars, vector[len(self.rows) * width :], strict=True):
+        at = 0
+        for branch, name in self.rows:
+            width = self.degrees[branch] + 1
+            table[branch, _ROW[name], :width] = vector[at : at + width]
+            at += width
+        for name, value in zip(self.scalars, vector[at:], strict=True):
             scalars[_SCALAR[name]] = np.exp(value) if name in _LOGARITHMIC else value
         return table, scalars
 
@@ -95,9 +101,9 @@ def evaluate(grid: Grid, table: Array, scalars: Array, layout: Layout) -> tuple[
     stretch = grid.age / (grid.age + named["relaxation_time"])  # dx / d ln t
     basis = grid.basis
     active = [[name for b, name in layout.rows if b == branch] for branch in (0, 1)]
-    y, y_x, d, d_x = _branch(x, basis, table[0], named, active[0])
+    y, y_x, d, d_x = _branch(x, basis, table[0], named, active[0], layout.degrees[0])
     if named["direct_urca"]:
-        fast = _branch(x, basis, table[1], named, active[1])
+        fast = _branch(x, basis, table[1], named, active[1], layout.degrees[1])
         y, y_x, d, d_x = _join((y, y_x, d, d_x), fast, grid.mass, named, layout.scalars)
     return _floored(y, y_x * stretch, d, d_x * stretch[:, None], named["ln_floor"])
 
@@ -105,9 +111,11 @@ def evaluate(grid: Grid, table: Array, scalars: Array, layout: Layout) -> tuple[
 type _Jet = tuple[Array, Array, Array, Array]
 
 
-def _branch(x: Array, basis: Array, rows: Array, named: dict[str, float], active: list[str]) -> _Jet:
+def _branch(
+    x: Array, basis: Array, rows: Array, named: dict[str, float], active: list[str], degree: int
+) -> _Jet:
     """Value and x-slope of one branch, and derivatives by its active rows."""
-    theta = rows @ basis.T
+    theta, moving = rows @ basis.T, basis[:, : degree + 1]
     v = {
         n: np.exp(t) if n in form.POSITIVE else t
         for n, t in zip(form.PARAMETERS, theta[:, :, None], strict=True)
@@ -138,7 +146,7 @@ def _branch(x: Array, basis: Array, rows: Array, named: dict[str, float], active
         e = np.exp(np.minimum(beta * x - v["q"], 50.0))
         y, y_x = y - e, y_x - beta * e
         d["beta"], d["q"] = (-e * beta * x, -beta * e * (1 + beta * x)), (e, beta * e)
-    return y, y_x, _spread(d, active, basis, 0), _spread(d, active, basis, 1)
+    return y, y_x, _spread(d, active, moving, 0), _spread(d, active, moving, 1)
 
 
 def _spread(d: dict[str, tuple[Array, Array]], active: list[str], basis: Array, which: int) -> Array:

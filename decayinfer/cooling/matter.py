@@ -13,8 +13,17 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from decayinfer.cooling.constants import HBAR_C_MEV_FM, MASS_MUON_MEV, SATURATION_DENSITY
+from decayinfer.cooling.eos import EquationOfState
+from decayinfer.cooling.stars import maximum_mass_star, sequence
 
-__all__ = ["SYMMETRY_ENERGIES", "Composition", "SymmetryEnergy", "beta_equilibrium", "urca_opening"]
+__all__ = [
+    "SYMMETRY_ENERGIES",
+    "Composition",
+    "SymmetryEnergy",
+    "beta_equilibrium",
+    "direct_urca_mass",
+    "urca_opening",
+]
 
 type Array = NDArray[np.float64]
 
@@ -150,3 +159,21 @@ def urca_opening(composition: Composition, k_lepton: Array, *, width: float = 0.
     d = (composition.k_p + k_lepton) / composition.k_n - 1
     opening = -np.expm1(-((np.maximum(d, 0) / width) ** 2))
     return np.where(k_lepton > 0, opening, 0.0)
+
+
+def direct_urca_mass(eos: EquationOfState, symmetry: SymmetryEnergy) -> float:
+    """Mass [M_sun] of the star in whose centre direct Urca with electrons opens.
+
+    Infinite if no star is heavy enough, zero if it is open at every density. The threshold is k_n = k_p + k_e
+    (Lattimer et al. 1991, PRL 66, 2701).
+    """
+    n = np.linspace(0.15, float(eos.baryon_density[-1]), 4000)
+    c = beta_equilibrium(n, symmetry)
+    opening = c.k_p + c.k_e - c.k_n
+    top = maximum_mass_star(eos)
+    if opening[0] > 0 or not np.any(opening > 0):
+        return 0.0 if opening[0] > 0 else float("inf")
+    first = int(np.argmax(opening > 0))
+    onset = np.interp(0.0, opening[first - 1 : first + 1], n[first - 1 : first + 1])
+    rho = float(np.interp(onset, eos.baryon_density, eos.density))
+    return sequence(eos, [rho])[0].mass if rho < top.central_density else float("inf")
