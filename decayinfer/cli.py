@@ -53,7 +53,13 @@ def _guarded[**P](command: Callable[P, None]) -> Callable[P, None]:
         try:
             command(*args, **kwargs)
         except DecayinferError as error:
-            stderr().print(f"error: {error}", style="red", markup=False, highlight=False, soft_wrap=True)
+            stderr().print(
+                "error: " + " ".join(str(error).splitlines()),
+                style="red",
+                markup=False,
+                highlight=False,
+                soft_wrap=True,
+            )
             raise typer.Exit(_USER_ERROR) from None
         except KeyboardInterrupt:
             stderr().print("stopped; the same command goes on where this one stopped", soft_wrap=True)

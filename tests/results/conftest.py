@@ -5,6 +5,7 @@ import os
 import subprocess
 import sys
 import types
+from contextlib import contextmanager
 from pathlib import Path
 
 import pytest
@@ -17,18 +18,31 @@ from decayinfer.inference.settings import FitSettings
 HERE = Path(__file__).parent
 
 
+@pytest.fixture(scope="session")
+def make_engine():
+    """Put the fake engine in the place of the real one for a while."""
+
+    @contextmanager
+    def make():
+        spec = importlib.util.spec_from_file_location("fake_engine", HERE / "fake_engine.py")
+        module = importlib.util.module_from_spec(spec)
+        spec.loader.exec_module(module)
+        fake = types.SimpleNamespace(fit_channel=module.fit_channel)
+        with pytest.MonkeyPatch.context() as patch:
+            patch.setattr(decayinfer.inference, "fit", fake, raising=False)
+            yield module
+
+    return make
+
+
 @pytest.fixture
-def engine(monkeypatch):
+def engine(make_engine):
     """The fake engine in the place of the real one."""
-    spec = importlib.util.spec_from_file_location("fake_engine", HERE / "fake_engine.py")
-    module = importlib.util.module_from_spec(spec)
-    spec.loader.exec_module(module)
-    fake = types.SimpleNamespace(fit_channel=module.fit_channel)
-    monkeypatch.setattr(decayinfer.inference, "fit", fake, raising=False)
-    return module
+    with make_engine() as module:
+        yield module
 
 
-@pytest.fixture
+@pytest.fixture(scope="session")
 def catalogue():
     """Make a catalogue of objects with the given names."""
 
@@ -42,7 +56,7 @@ def catalogue():
     return make
 
 
-@pytest.fixture
+@pytest.fixture(scope="session")
 def settings():
     """Short settings with one channel that is unreachable."""
     return FitSettings(channels=("constant", "phonon", "phonon+hall"), draws=100, tune=50)

@@ -1,7 +1,7 @@
 """A stand-in for the sampler: instant, deterministic, and able to misbehave on demand.
 
-The name of an object says how its runs end: ``unreachable``, ``broken`` (an exception), ``panic`` (an exception that
-is no Exception), ``killer`` (the process dies), anything else ok.
+The name of an object says how its runs end: ``unreachable``, ``broken`` (an exception), ``panic`` (an
+exception that is no Exception), ``killer`` (the process dies), anything else ok.
 """
 
 import hashlib
@@ -9,7 +9,7 @@ import os
 import time
 
 import numpy as np
-from xarray import DataTree, Dataset
+from xarray import Dataset, DataTree
 
 from decayinfer.channels.registry import load_channel
 from decayinfer.inference.outcome import ChannelFit, Status
@@ -38,7 +38,9 @@ def fit_channel(pulsar, channel, scenario, settings):
         raise PanicError("deep trouble")
     if pulsar.name.startswith("unreachable") or channel == "constant":
         reason = "n lies 12 standard deviations from what the channel can give"
-        return ChannelFit(*labels, Status.UNREACHABLE, reason=reason, ln_evidence=-np.inf, ln_evidence_err=0.0)
+        return ChannelFit(
+            *labels, Status.UNREACHABLE, reason=reason, ln_evidence=-np.inf, ln_evidence_err=0.0
+        )
     return _made_up(labels, settings)
 
 
@@ -48,7 +50,11 @@ def _made_up(labels, settings):
     shape = (settings.chains, settings.draws)
     names = load_channel(labels[2]).parameters
     posterior, prior = ({name: _values(name, random, shape) for name in names} for _ in range(2))
-    tree = {"posterior": posterior, "prior": prior, "sample_stats": {"diverging": random.random(shape) < 0.001}}
+    tree = {
+        "posterior": posterior,
+        "prior": prior,
+        "sample_stats": {"diverging": random.random(shape) < 0.001},
+    }
     groups = {
         group: Dataset({name: (("chain", "draw"), values) for name, values in content.items()})
         for group, content in tree.items()

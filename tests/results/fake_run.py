@@ -14,9 +14,12 @@ import fake_engine
 import decayinfer.inference
 from decayinfer.catalog import read_table
 
-# At import, not under the guard below: parallel processes import this file too and need the fake as well.
-fake_engine.delay = float(sys.argv[3])
-decayinfer.inference.fit = types.SimpleNamespace(fit_channel=fake_engine.fit_channel)
+if __name__ in (
+    "__main__",
+    "__mp_main__",
+):  # parallel processes import this file too
+    fake_engine.delay = float(sys.argv[3])
+    decayinfer.inference.fit = types.SimpleNamespace(fit_channel=fake_engine.fit_channel)
 
 
 def catalogue(names):
