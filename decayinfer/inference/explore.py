@@ -1,0 +1,182 @@
+"""Explore one density: NUTS, evidence by importance sampling, and a longer retry when either is poor."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from decayinfer.inference.density import evaluate
+from decayinfer.inference.engine import NutsRun, engine
+from decayinfer.inference.importance import Weighted, importance_sample
+from decayinfer.inference.problem import Problem
+from decayinfer.inference.settings import FitSettings
+
+__all__ = ["Exploration", "Quality", "Standard", "explore"]
+
+type Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class Standard:
+    """What draws must reach to be reported as converged."""
+
+    r_hat: float = 1.01
+    ess: float = 400.0
+    divergent: float = 0.005
+    pareto_k: float = 0.7
+
+
+@dataclass(frozen=True)
+class Quality:
+    """Worst diagnostics over the coordinates in use."""
+
+    ess_bulk: float
+    ess_tail: float
+    r_hat: float
+    divergences: int
+    draws: int
+
+    def meets(self, standard: Standard) -> bool:
+        """Whether every diagnostic is within the standard."""
+        return bool(
+            self.ess_bulk >= standard.ess
+            and self.ess_tail >= standard.ess / 4.0
+            and self.r_hat <= standard.r_hat
+            and self.divergences <= standard.divergent * self.draws
+        )
+
+
+@dataclass(frozen=True)
+class Exploration:
+    """Draws and evidence of one density.
+
+    Attributes
+    ----------
+    points : (chains, draws, 8) array
+        Coordinates.
+    diverging : (chains, draws) array of bool
+        Divergent transitions among them.
+    quality : Quality
+        Diagnostics of the points.
+    weighted : Weighted
+        Importance sample behind the evidence.
+    gradients : int
+        Gradient evaluations spent.
+    converged, topped_up, retried : bool
+        Whether the points meet the standard, come from importance weights, or took a longer run.
+    """
+
+    points: Array
+    diverging: NDArray[np.bool_]
+    quality: Quality
+    weighted: Weighted
+    gradients: int
+    converged: bool
+    topped_up: bool = False
+    retried: bool = False
+
+
+STANDARD = Standard()
+_PROPOSALS = 4000
+_CANDIDATES = 150
+
+
+def explore(
+    problem: Problem, settings: FitSettings, seeds: np.random.SeedSequence, *, wider: Array | None = None
+) -> Exploration:
+    """Sample a density and integrate it.
+
+    Parameters
+    ----------
+    problem : Problem
+        The density.
+    settings : FitSettings
+        Lengths of the run.
+    seeds : numpy.random.SeedSequence
+        Source of every random number.
+    wider : (k, 8) array, optional
+        Draws of a wider density, for the importance proposal.
+
+    Raises
+    ------
+    SamplingError
+        If the sampler cannot start.
+    """
+    first, second = seeds.spawn(2)
+    tried = _attempt(problem, settings, first, wider, longer=False)
+    if tried.converged:
+        return tried
+    again = _attempt(problem, settings, second, wider, longer=True)
+    gradients = tried.gradients + again.gradients
+    return Exploration(**(vars(again) | {"gradients": gradients, "retried": True}))
+
+
+def _attempt(
+    problem: Problem, settings: FitSettings, seeds: np.random.SeedSequence, wider: Array | None, *, longer: bool
+) -> Exploration:
+    stretch = 4 if longer else 1
+    rng = np.random.default_rng(seeds)
+    run = engine().sample(
+        problem,
+        lambda seed: _start(problem, np.random.default_rng(seed)),
+        draws=stretch * settings.draws,
+        tune=(2 if longer else 1) * settings.tune,
+        chains=settings.chains,
+        seed=int(rng.integers(2**31)),
+        target_accept=0.95 if longer else 0.8,
+    )
+    flat = run.points.reshape(-1, run.points.shape[-1])
+    weighted = importance_sample(problem, flat, stretch * _PROPOSALS, rng, wider=wider)
+    quality = _quality(problem, run)
+    sound = weighted.effective_size >= STANDARD.ess and weighted.pareto_k < STANDARD.pareto_k
+    converged = quality.meets(STANDARD) and sound
+    if not converged and sound:
+        # refit to the weighted draws: the first proposal inherits what made the chains mix poorly
+        refitted = weighted.resample(flat.shape[0], rng)
+        weighted = importance_sample(problem, refitted, 2 * stretch * _PROPOSALS, rng, wider=wider)
+        if weighted.effective_size >= 2.0 * STANDARD.ess and weighted.pareto_k < STANDARD.pareto_k:
+            return _topped_up(problem, settings, run, weighted, rng)
+    points, diverging = run.points[:, -settings.draws :], run.diverging[:, -settings.draws :]
+    if longer and converged:
+        points, diverging = run.points[:, stretch - 1 :: stretch], run.diverging[:, stretch - 1 :: stretch]
+    return Exploration(points, diverging, quality, weighted, run.gradients, converged)
+
+
+def _topped_up(
+    problem: Problem, settings: FitSettings, run: NutsRun, weighted: Weighted, rng: np.random.Generator
+) -> Exploration:
+    shape = (settings.chains, settings.draws, problem.active.size)
+    points = weighted.resample(settings.chains * settings.draws, rng).reshape(shape)
+    independent = NutsRun(points, np.zeros(shape[:2], dtype=bool), run.gradients, run.seconds)
+    found = _quality(problem, independent)
+    # resampled draws repeat: they are worth no more than the weights they came from
+    worth = weighted.effective_size
+    quality = Quality(min(found.ess_bulk, worth), min(found.ess_tail, worth), found.r_hat, 0, found.draws)
+    return Exploration(
+        points, independent.diverging, quality, weighted, run.gradients, quality.meets(STANDARD), topped_up=True
+    )
+
+
+def _start(problem: Problem, rng: np.random.Generator) -> Array:
+    """Best of a cloud of candidates: the warm-up then never begins beyond the wall of infinite birth field."""
+    phonon, umklapp = problem.normals[0, 0], problem.normals[0, 6]
+    centre = np.array([-1.0, 0.0, -0.7, -0.7, -0.7, 0.5, umklapp, phonon])
+    spread = np.array([1.0, 0.7, 1.5, 1.2, 1.5, 1.0, 0.3, 1.0])
+    cloud = rng.standard_normal((_CANDIDATES, centre.size))
+    cloud = np.where(problem.active > 0.0, centre + spread * cloud, cloud)
+    best: Array = cloud[np.argmax(evaluate(cloud, problem).ln_density(problem))]
+    return best
+
+
+def _quality(problem: Problem, run: NutsRun) -> Quality:
+    from arviz_stats.base import array_stats
+
+    used = run.points[:, :, problem.active > 0.0]
+    axes = {"chain_axis": 0, "draw_axis": 1}
+    return Quality(
+        ess_bulk=float(np.min(array_stats.ess(used, method="bulk", **axes))),
+        ess_tail=float(np.min(array_stats.ess(used, method="tail", prob=(0.05, 0.95), **axes))),
+        r_hat=float(np.max(array_stats.rhat(used, **axes))),
+        divergences=int(run.diverging.sum()),
+        draws=run.diverging.size,
+    )

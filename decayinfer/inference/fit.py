@@ -1,0 +1,198 @@
+"""Fit one object: every channel under every cooling scenario, each with posterior, prior and evidence."""
+
+import json
+from collections.abc import Callable
+from dataclasses import replace
+
+import numpy as np
+
+from decayinfer.catalog.pulsar import Pulsar
+from decayinfer.channels.base import Channel
+from decayinfer.channels.registry import channel_names, load_channel
+from decayinfer.cooling.registry import load_scenario, scenario_names
+from decayinfer.errors import SamplingError
+from decayinfer.inference.density import evaluate
+from decayinfer.inference.explore import Exploration, explore
+from decayinfer.inference.importance import rewarp
+from decayinfer.inference.measurement import total_error
+from decayinfer.inference.outcome import ChannelFit, ObjectFit, Status
+from decayinfer.inference.problem import Problem, make_problem
+from decayinfer.inference.report import data_tree, parameters
+from decayinfer.inference.seeds import named_seeds
+from decayinfer.inference.settings import FitSettings
+
+__all__ = ["fit_channel", "fit_object"]
+
+REACH = 5.0  #: total standard deviations beyond which an index is out of a channel's reach
+
+
+def fit_object(
+    pulsar: Pulsar,
+    settings: FitSettings | None = None,
+    *,
+    on_progress: Callable[[str, str], None] | None = None,
+) -> ObjectFit:
+    """Fit an object under every channel and cooling scenario of the settings.
+
+    Parameters
+    ----------
+    pulsar : Pulsar
+        The object.
+    settings : FitSettings, optional
+        Channels, scenarios, lengths, seed and priors.
+    on_progress : callable, optional
+        Called with the scenario and the channel before each posterior run.
+
+    Returns
+    -------
+    ObjectFit
+        One `ChannelFit` per scenario and channel; a run that fails is one of them, not an exception.
+
+    Examples
+    --------
+    >>> import decayinfer as di
+    >>> star = di.Pulsar(name="Wren 3", period=0.31, period_derivative=4e-14, braking_index=21.0,
+    ...                  braking_index_err_minus=1.5, braking_index_err_plus=1.5)
+    >>> settings = di.FitSettings(channels=("constant", "phonon"), cooling=(di.scenario_names()[0],))
+    >>> fit = di.fit_object(star, settings)
+    >>> [(run.channel, run.status.value) for run in fit.fits]
+    [('constant', 'unreachable'), ('phonon', 'ok')]
+    """
+    settings = settings or FitSettings()
+    scenarios = settings.cooling or scenario_names()
+    weights = {name: load_scenario(name).weight for name in scenarios}
+    total = sum(weights.values())
+    fits = []
+    for scenario in scenarios:
+        for channel in settings.channels or channel_names():
+            if on_progress is not None:
+                on_progress(scenario, channel)
+            fits.append(fit_channel(pulsar, channel, scenario, settings))
+    return ObjectFit(pulsar.name, tuple(fits), {name: weight / total for name, weight in weights.items()})
+
+
+def fit_channel(pulsar: Pulsar, channel: str, scenario: str, settings: FitSettings) -> ChannelFit:
+    """Fit an object under one channel and one cooling scenario.
+
+    The result depends on nothing but the arguments: the seed is made from the run seed and the names.
+
+    Parameters
+    ----------
+    pulsar : Pulsar
+        The object.
+    channel, scenario : str
+        Registry names.
+    settings : FitSettings
+        Lengths, seed and priors.
+
+    Raises
+    ------
+    UnknownNameError
+        If a name is in no registry.
+    """
+    explanation = load_channel(channel)
+    problem = make_problem(pulsar, explanation, load_scenario(scenario), settings.priors)
+    seeds = named_seeds(settings.seed, pulsar.name, scenario, channel)
+    blank = ChannelFit(pulsar.name, scenario, channel, Status.FAILED)
+    try:
+        return _fit(blank, pulsar, explanation, problem, seeds, settings)
+    except SamplingError as error:
+        return replace(blank, reason=str(error), flags=("failed",))
+
+
+def _fit(
+    blank: ChannelFit,
+    pulsar: Pulsar,
+    channel: Channel,
+    problem: Problem,
+    seeds: np.random.SeedSequence,
+    settings: FitSettings,
+) -> ChannelFit:
+    without, within = seeds.spawn(2)
+    prior = explore(problem.without_index(), settings, without)
+    attributes = {
+        "object": pulsar.name, "scenario": blank.scenario, "channel": channel.name,
+        "seed": settings.seed, "settings": json.dumps(settings.as_dict()),
+    }  # fmt: skip
+    reason = _out_of_reach(problem, channel, prior, settings)
+    if reason:
+        draws = data_tree(problem, channel, prior, None, attributes)
+        return replace(
+            blank, status=Status.UNREACHABLE, reason=reason, ln_evidence=-np.inf, ln_evidence_err=0.0,
+            ln_evidence_joint=-np.inf, ln_evidence_joint_err=0.0, gradients=prior.gradients,
+            flags=("unreachable",), draws=draws,
+        )  # fmt: skip
+    if channel.decays:
+        wider = rewarp(prior.points.reshape(-1, prior.points.shape[-1]), problem.without_index(), problem)
+        posterior = explore(problem, settings, within, wider=wider)
+        joint, joint_err = posterior.weighted.ln_evidence, posterior.weighted.ln_evidence_err
+        conditional = joint - prior.weighted.ln_evidence
+        conditional_err = float(np.hypot(joint_err, prior.weighted.ln_evidence_err))
+        gradients = prior.gradients + posterior.gradients
+    else:
+        # n = 3 whatever the coordinates: the likelihood is one number and the posterior is the prior
+        posterior = prior
+        conditional = float(evaluate(prior.points[0, :1], problem).ln_likelihood[0])
+        conditional_err, joint_err = 0.0, prior.weighted.ln_evidence_err
+        joint = conditional + prior.weighted.ln_evidence
+        gradients = prior.gradients
+    converged = prior.converged and posterior.converged
+    return replace(
+        blank,
+        status=Status.OK if converged else Status.FAILED,
+        reason="" if converged else _shortcoming(prior, posterior),
+        ln_evidence=conditional,
+        ln_evidence_err=conditional_err,
+        ln_evidence_joint=joint,
+        ln_evidence_joint_err=joint_err,
+        ess_bulk_min=min(prior.quality.ess_bulk, posterior.quality.ess_bulk),
+        ess_tail_min=min(prior.quality.ess_tail, posterior.quality.ess_tail),
+        r_hat_max=max(prior.quality.r_hat, posterior.quality.r_hat),
+        divergences=int(posterior.diverging.sum()),
+        gradients=gradients,
+        flags=_flags(posterior, converged),
+        draws=data_tree(problem, channel, prior, posterior, attributes),
+    )
+
+
+def _out_of_reach(problem: Problem, channel: Channel, prior: Exploration, settings: FitSettings) -> str:
+    """Say why a channel cannot give the index, or nothing when it can."""
+    observed, minus, plus, limit = problem.index
+    predicted = parameters(prior.points, problem.without_index(), channel)["braking_index"]
+    margin = REACH * total_error(minus, plus, settings.priors.scatter_sd)
+    low = 3.0  # decay only adds to the index of a constant dipole
+    high = float(predicted.max())
+    what = "limit" if limit else "index"
+    if observed < low - margin:
+        return f"{what} {observed:g} lies more than {REACH:g} total errors below 3, the least this channel gives"
+    if observed > high + margin and not limit:
+        return (
+            f"index {observed:g} lies more than {REACH:g} total errors above {high:.4g}, "
+            "the most this channel gives at this period and period derivative"
+        )
+    return ""
+
+
+def _shortcoming(prior: Exploration, posterior: Exploration) -> str:
+    parts = []
+    for label, run in (("without n", prior), ("with n", posterior)):
+        if not run.converged:
+            q = run.quality
+            parts.append(
+                f"{label}: R-hat {q.r_hat:.3f}, bulk ESS {q.ess_bulk:.0f}, {q.divergences} divergences in "
+                f"{q.draws} draws, effective weights {run.weighted.effective_size:.0f}"
+            )
+    return "did not converge after a longer retry (" + "; ".join(parts) + "); raise --draws and --tune"
+
+
+def _flags(posterior: Exploration, converged: bool) -> tuple[str, ...]:
+    flags = []
+    if not converged:
+        flags.append("poor-mixing")
+    if posterior.topped_up:
+        flags.append("topped-up")
+    if posterior.retried:
+        flags.append("retried")
+    if posterior.weighted.ln_evidence_err > 0.05:
+        flags.append("evidence-noisy")
+    return tuple(flags)

@@ -1,0 +1,104 @@
+"""From coordinates to the reported parameters, and into ArviZ's schema."""
+
+import json
+from importlib.metadata import version
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+from xarray import DataTree
+
+from decayinfer.channels.base import Channel
+from decayinfer.inference.density import evaluate
+from decayinfer.inference.explore import Exploration
+from decayinfer.inference.problem import COORDINATES, Problem
+from decayinfer.physics import torque
+from decayinfer.physics.constants import B_UNIT_G, T_UNIT_K
+
+__all__ = ["SCHEMA", "data_tree", "parameters"]
+
+type Array = NDArray[np.float64]
+
+SCHEMA = "1"  #: major version of the layout of stored draws
+
+
+def parameters(points: Array, problem: Problem, channel: Channel) -> dict[str, Array]:
+    """Return the parameters that a channel reports, in the units of `decayinfer.inference.outcome.PARAMETERS`.
+
+    Parameters
+    ----------
+    points : (..., 8) array
+        Coordinates.
+    problem : Problem
+        The numbers of the problem.
+    channel : Channel
+        The explanation.
+
+    Returns
+    -------
+    dict of str to array
+        Each of the shape of ``points`` without its last axis.
+    """
+    shape = points.shape[:-1]
+    evaluation = evaluate(points.reshape(-1, points.shape[-1]), problem)
+    p = evaluation.physical
+    age_yr, tau_c = np.exp(p.ln_age), np.exp(problem.spin[2])
+    from decayinfer.cooling.form import ln_temperature
+
+    with np.errstate(over="ignore", divide="ignore"):  # parameters of a channel that is off overflow
+        every = {
+            "mass": p.mass,
+            "impurity_parameter": np.exp(p.ln_impurity_parameter),
+            "phonon_time": np.exp(p.ln_phonon_time),
+            "hall_time": np.exp(p.ln_hall_time),
+            "age": age_yr,
+            "birth_field": np.exp(p.ln_birth_field) * B_UNIT_G,
+            "birth_period": np.exp(p.ln_birth_period),
+            "field": np.exp(p.ln_field) * B_UNIT_G,
+            "braking_index": p.index + np.zeros_like(age_yr),
+            "decay_time": torque.decay_time(p.index, tau_c) + np.zeros_like(age_yr),
+            "crust_temperature": np.exp(ln_temperature(p.ln_age, p.mass, problem.table, problem.scalars)) * T_UNIT_K,
+            "share_impurity": p.share_impurity,
+            "share_phonon": p.share_phonon,
+            "share_hall": p.share_hall,
+        }
+    return {name: np.broadcast_to(every[name], (int(np.prod(shape)),)).reshape(shape) for name in channel.parameters}
+
+
+def data_tree(
+    problem: Problem, channel: Channel, prior: Exploration, posterior: Exploration | None, attributes: dict[str, Any]
+) -> DataTree:
+    """Gather draws in ArviZ's schema.
+
+    Groups ``prior`` (given P and Pdot, without n), and with a posterior also ``posterior``, ``sample_stats``,
+    ``log_likelihood``, ``log_prior`` and ``observed_data``.
+    """
+    import arviz as az
+
+    groups: dict[str, dict[str, Array]] = {
+        "prior": _variables(prior.points, problem.without_index(), channel),
+        "prior_sample_stats": {"diverging": prior.diverging},
+        "observed_data": {"braking_index": np.asarray(problem.index[0])},
+    }
+    if posterior is not None:
+        shape = posterior.points.shape[:2]
+        evaluation = evaluate(posterior.points.reshape(-1, posterior.points.shape[-1]), problem)
+        likelihood = evaluation.ln_likelihood.reshape(shape)
+        ln_prior = evaluation.ln_prior.reshape(shape)
+        groups |= {
+            "posterior": _variables(posterior.points, problem, channel),
+            "sample_stats": {"diverging": posterior.diverging, "lp": likelihood + ln_prior},
+            "log_likelihood": {"braking_index": likelihood},
+            "log_prior": {"all_coordinates": ln_prior},
+        }
+    tree = az.from_dict(groups, coords={"coordinate": list(COORDINATES)}, dims={"coordinates": ["coordinate"]})
+    tree.attrs.update({"schema": SCHEMA, "versions": json.dumps(_versions()), **attributes})
+    return tree
+
+
+def _variables(points: Array, problem: Problem, channel: Channel) -> dict[str, Array]:
+    return {"coordinates": points} | parameters(points, problem, channel)
+
+
+def _versions() -> dict[str, str]:
+    return {name: version(name) for name in ("decayinfer", "numpy", "pymc", "pytensor", "nutpie", "numba", "arviz")}
