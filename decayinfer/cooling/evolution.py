@@ -88,7 +88,7 @@ class CoolingCurve:
     photon_share : (n,) array
         Photon luminosity over total.
     energy_error : float
-        Energy radiated minus heat lost between the first and last age, over the heat lost.
+        Energy radiated over heat lost, less one, from the first age (or an e-fold of age) to the last.
     """
 
     ln_age: Array
@@ -166,7 +166,7 @@ def cool(inner: Interior, age: ArrayLike, *, envelope: str) -> CoolingCurve:
         slope=slope(ln_age, y),
         surface_temperature=surface_temperature(t_b, star.gravity_14, envelope=envelope),
         photon_share=CubicSpline(LN_T_GRID, photons / loss)(y),
-        energy_error=_energy_error(found.sol, ln_age[0], found.t[-1], loss, heat),
+        energy_error=_energy_error(found.sol, min(ln_age[0], found.t[-1] - 1), found.t[-1], loss, heat),
     )
 
 
