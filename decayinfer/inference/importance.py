@@ -60,7 +60,8 @@ class Weighted:
         """Shape of the generalised Pareto tail of the weights (Vehtari et al. 2024, JMLR 25, 72), by ArviZ."""
         from arviz_stats.base import array_stats
 
-        _, k = array_stats.psislw(self.ln_weights)
+        # ArviZ takes the negative: it expects log likelihoods whose inverse are the weights
+        _, k = array_stats.psislw(-self.ln_weights[np.isfinite(self.ln_weights)])
         return float(k)
 
     def resample(self, n: int, rng: np.random.Generator) -> Array:

@@ -111,7 +111,7 @@ class ChannelFit:
         return self._flat("prior", parameter)
 
     def _flat(self, group: str, parameter: str) -> NDArray[np.float64]:
-        if self.draws is None or parameter not in self.draws[group].data_vars:
+        if self.draws is None or group not in self.draws or parameter not in self.draws[group].data_vars:
             return np.empty(0)
         return np.asarray(self.draws[group][parameter].values, dtype=float).ravel()
 
