@@ -103,7 +103,7 @@ def _fit(recipe: Recipe, starts: int) -> Fit:
         sigmoid_terms=2 if rich else 1,
         exponential_term=rich,
         tolerance=(0.05, 0.25) if recipe.superfluidity == "triplet" else (0.01, 0.05),
-        starts=starts,
+        starts=2 * starts if rich else starts,
     )
     if not recipe.direct_urca:
         return fit

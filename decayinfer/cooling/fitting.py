@@ -29,6 +29,9 @@ URCA_WIDTH = (
 )
 FAST_DEGREE = 1  #: degree in mass of the direct-Urca branch
 YOUNGEST = 1e3  #: errors count from this age [yr]; the fit itself starts earlier
+NARROWEST = float(np.log(0.15))  #: least width of a feature in the clock x [ln]
+_STIFF = 3.0  # residual per e-fold below the least width
+_POLISHED = 5  # starts that are refined on the full grid
 _RIDGE = 3e-3  # holds coefficients that the data leave free near their start
 
 
@@ -197,12 +200,12 @@ def _best(
     then: Layout,
     tolerance: Tolerance,
 ) -> Fit:
-    """Minimise from every start on a coarse grid, then polish the three best on the full one."""
+    """Minimise from every start on a coarse grid, then polish the best few on the full one."""
     n_mass = target.grid.mass.size
     thin = [np.broadcast_to(np.asarray(t), n_mass)[::2] for t in tolerance]
     coarse = _problem(target.thinned(2, 2), table, scalars, first, (thin[0], thin[1]))
     tried = sorted((_minimise(coarse, start, 60) for start in random), key=lambda pair: pair[0])
-    promising = [then.pack(*first.unpack(vector, table, scalars)) for _, vector in tried[:3]]
+    promising = [then.pack(*first.unpack(vector, table, scalars)) for _, vector in tried[:_POLISHED]]
     return _polish(promising, target, table, scalars, then, tolerance)
 
 
@@ -231,11 +234,11 @@ def _column(tolerance: float | Array) -> Array:
 
 
 def _weights(target: Target, tolerance: Tolerance) -> tuple[Array, Array]:
-    """Weights of value and slope: full where errors are measured, low where only the trend matters."""
+    """Weights of value and slope: full where errors are measured and a little beyond, low elsewhere."""
     warm = np.nan_to_num(target.ln_t_b, nan=-99.0)
     young = np.where(target.grid.age < 1e3, 0.3, 1.0)
-    value = np.where(warm > LN_MEASURED - 0.1, young, 0.1) / _column(tolerance[0])
-    slope = np.where(warm > LN_SLOPE_MEASURED - 0.1, young, 0.0) / _column(tolerance[1])
+    value = np.where(warm > LN_MEASURED - 0.3, young, 0.1) / _column(tolerance[0])
+    slope = np.where(warm > LN_SLOPE_MEASURED - 0.2, young, 0.0) / _column(tolerance[1])
     return value, slope
 
 
@@ -251,9 +254,25 @@ def _problem(target: Target, table: Array, scalars: Array, layout: Layout, toler
         value, slope, d, d_slope = evaluate(target.grid, *layout.unpack(vector, table, scalars), layout)
         r = [((value - wanted) * w_value).ravel(), ((slope - wanted_slope) * w_slope)[steady]]
         jac = [(d * w_value[..., None]).reshape(-1, vector.size), d_slope[steady] * w_slope[steady][:, None]]
-        return np.concatenate(r), np.concatenate(jac)
+        narrow, by_width = _too_narrow(vector, target.grid, layout)
+        return np.concatenate([*r, narrow]), np.concatenate([*jac, by_width])
 
     return residuals
+
+
+def _too_narrow(vector: Array, grid: Grid, layout: Layout) -> tuple[Array, Array]:
+    """Penalty on features narrower than `NARROWEST`, which could hide between the ages of the fit."""
+    residual, jac, at = [], [], 0
+    for branch, name in layout.rows:
+        basis = grid.basis[:, : layout.degrees[branch] + 1]
+        if name[0] in "wv":
+            lack = NARROWEST - basis @ vector[at : at + basis.shape[1]]
+            rows = np.zeros((lack.size, vector.size))
+            rows[:, at : at + basis.shape[1]] = -_STIFF * basis * (lack > 0)[:, None]
+            residual.append(_STIFF * np.maximum(lack, 0))
+            jac.append(rows)
+        at += basis.shape[1]
+    return np.concatenate(residual), np.concatenate(jac)
 
 
 def _minimise(
