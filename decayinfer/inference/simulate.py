@@ -98,7 +98,8 @@ def _one(channel_name: str, scenario_name: str, settings: FitSettings, rng: np.r
     for _ in range(25):
         draws = draw_prior(_BATCH, settings.priors, rng)
         today = evolve(draws, channel, scenario, settings.priors)
-        age = torque.characteristic_age(today.period, today.period_derivative)
+        with np.errstate(divide="ignore", over="ignore"):  # a dead field has an infinite characteristic age
+            age = torque.characteristic_age(today.period, today.period_derivative)
         kept = _within(today.period, _PERIODS) & _within(age, _AGES)
         if channel.decays:
             kept &= _within(today.index, _INDICES)
