@@ -17,7 +17,9 @@ if sys.version_info < (3, 12):  # noqa: UP036
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
-    from decayinfer.catalog import read_table
+    from decayinfer.catalog import Pulsar, read_table
+    from decayinfer.channels.registry import channel_names
+    from decayinfer.cooling.registry import scenario_names
     from decayinfer.inference.fit import fit_object
     from decayinfer.inference.priors import Priors
     from decayinfer.inference.settings import FitSettings
@@ -28,11 +30,14 @@ if TYPE_CHECKING:
 __all__ = [
     "FitSettings",
     "Priors",
+    "Pulsar",
     "__version__",
+    "channel_names",
     "fit_object",
     "fit_sample",
     "read_run",
     "read_table",
+    "scenario_names",
     "simulate_table",
 ]
 
@@ -41,10 +46,13 @@ __version__ = "0.1.0"
 _HOMES = {
     "FitSettings": "decayinfer.inference.settings",
     "Priors": "decayinfer.inference.priors",
+    "Pulsar": "decayinfer.catalog",
+    "channel_names": "decayinfer.channels.registry",
     "fit_object": "decayinfer.inference.fit",
     "fit_sample": "decayinfer.results.run",
     "read_run": "decayinfer.results.read",
     "read_table": "decayinfer.catalog",
+    "scenario_names": "decayinfer.cooling.registry",
     "simulate_table": "decayinfer.inference.simulate",
 }
 

@@ -10,7 +10,7 @@ import typer
 from decayinfer import __version__
 from decayinfer.errors import DecayinferError, InputError
 from decayinfer.results.threads import one_thread
-from decayinfer.terminal import print_problems, print_table, show_progress, stderr, stdout, text_rows
+from decayinfer.terminal import print_problems, print_table, show_progress, stderr, stdout
 
 # Everything heavy is imported inside the commands, so that --help and error messages come at once.
 if TYPE_CHECKING:
@@ -90,11 +90,12 @@ def check(table: Annotated[str, typer.Argument(metavar="TABLE")], column: Column
 
     Exit code 1 when a row had to be set aside.
     """
-    from decayinfer.catalog import read_table, summary_table
+    from decayinfer.catalog import read_table
+    from decayinfer.results.listing import CHECK_HEADER, check_listing
 
     catalog = read_table(table, columns=_mapping(column))
     if catalog.pulsars:
-        print_table(*text_rows(summary_table(catalog)))
+        print_table(CHECK_HEADER, check_listing(catalog))
     print_problems(stdout(), catalog.problems)
     aside = catalog.rows_set_aside
     typer.echo(f"{len(catalog)} objects can be fitted, {len(aside)} rows set aside")

@@ -3,7 +3,7 @@
 import sys
 from collections.abc import Callable, Iterable, Iterator, Sequence
 from contextlib import contextmanager
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 from rich.console import Console
 
@@ -11,7 +11,7 @@ if TYPE_CHECKING:
     from decayinfer.catalog import Problem
     from decayinfer.results.run import Progress
 
-__all__ = ["print_problems", "print_table", "show_progress", "stderr", "stdout", "text_rows"]
+__all__ = ["print_problems", "print_table", "show_progress", "stderr", "stdout"]
 
 #: Width of tables that are printed to a file or a pipe.
 _WIDTH = 160
@@ -25,18 +25,6 @@ def stdout() -> Console:
 def stderr() -> Console:
     """Return a console on standard error."""
     return Console(stderr=True)
-
-
-def text_rows(table: Any) -> tuple[tuple[str, ...], list[tuple[str, ...]]]:
-    """Return an astropy table as text, units in the heads."""
-    heads = tuple(f"{c.name} [{c.unit}]" if c.unit else c.name for c in table.itercols())
-    return heads, [tuple(_cell(value) for value in row) for row in table.iterrows()]
-
-
-def _cell(value: Any) -> str:
-    if isinstance(value, str):
-        return value
-    return "-" if value != value else f"{value:.5g}"
 
 
 def print_table(heads: Sequence[str], rows: Iterable[Sequence[str]]) -> None:

@@ -79,7 +79,7 @@ def save_channel_fit(path: Path, fit: "ChannelFit", *, fingerprint: str = "") ->
     """
     from xarray import DataTree
 
-    header = {"layout": LAYOUT, "fingerprint": fingerprint, **_scalars(fit)}
+    header = {"layout": LAYOUT, "fingerprint": fingerprint, "drawn": fit.draws is not None, **_scalars(fit)}
     tree = DataTree() if fit.draws is None else fit.draws.copy()
     tree.attrs[HEADER] = json.dumps(header, default=_plain)
     with explain_os_errors(path):
@@ -104,7 +104,7 @@ def load_channel_fit(path: Path) -> "ChannelFit":
         draws = tree.load()
     values: dict[str, Any] = {f.name: header[f.name] for f in fields(ChannelFit) if f.name != "draws"}
     values |= {"status": Status(header["status"]), "flags": tuple(header["flags"])}
-    return ChannelFit(**values, draws=draws if "posterior" in draws.children else None)
+    return ChannelFit(**values, draws=draws if draws.children else None)
 
 
 def read_header(path: Path) -> dict[str, Any]:

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 from decayinfer.errors import UnknownNameError
 
-__all__ = ["FLAGS", "Flag", "describe", "join_flags", "split_flags"]
+__all__ = ["FLAGS", "Flag", "describe", "join_flags", "split_flags", "warns"]
 
 
 @dataclass(frozen=True)
@@ -20,11 +20,14 @@ class Flag:
         What was found, in a sentence.
     remedy : str
         What to do about it, in a sentence.
+    warns : bool
+        Whether a posterior run that carries it lends it to its object.
     """
 
     name: str
     meaning: str
     remedy: str
+    warns: bool = True
 
 
 #: Every flag, by name, in the order in which tables list them.
@@ -46,6 +49,7 @@ FLAGS = {
             "unreachable",
             "The channel cannot give this index; its probability is zero.",
             "Nothing to do, unless every channel is unreachable.",
+            warns=False,
         ),
         Flag(
             "poor-mixing",
@@ -57,6 +61,18 @@ FLAGS = {
             "evidence-noisy",
             "The standard error of a ln evidence is above 0.05, so channel probabilities are uncertain.",
             "Fit the object again with more --draws; judge close odds by best_probability_err.",
+        ),
+        Flag(
+            "topped-up",
+            "The chains mixed poorly but the importance weights were good, so the draws come from the weights.",
+            "Nothing to do; effective sample sizes count the weights.",
+            warns=False,
+        ),
+        Flag(
+            "retried",
+            "A first posterior run was too poor, so a longer one took its place.",
+            "Nothing to do, unless the longer one carries another flag.",
+            warns=False,
         ),
         Flag(
             "old",
@@ -113,6 +129,11 @@ def describe(name: str) -> str:
     if name not in FLAGS:
         raise UnknownNameError("flag", name, FLAGS)
     return f"{FLAGS[name].meaning} {FLAGS[name].remedy}"
+
+
+def warns(name: str) -> bool:
+    """Tell whether a posterior run's flag is one for its object too; unknown flags are."""
+    return name not in FLAGS or FLAGS[name].warns
 
 
 def join_flags(names: Iterable[str]) -> str:

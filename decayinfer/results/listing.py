@@ -1,18 +1,24 @@
 """The results of a run as a short table of text, for the end of a run."""
 
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from decayinfer.results.flags import FLAGS, split_flags
 from decayinfer.results.read import Run
 
-__all__ = ["HEADER", "flag_legend", "listing", "time_text"]
+if TYPE_CHECKING:
+    from decayinfer.catalog import Catalog
+
+__all__ = ["CHECK_HEADER", "HEADER", "check_listing", "flag_legend", "index_text", "listing", "time_text"]
 
 #: Column heads of `listing`.
 HEADER = (
     "object", "n", "tau_c", "most probable channel", "mass 90 % [Msun]", "prior", "phonon time 90 %", "flags",
 )  # fmt: skip
+
+#: Column heads of `check_listing`.
+CHECK_HEADER = ("object", "n", "tau_c", "B [G]", "decay time 4 tau_c/(n - 3)", "flags")
 
 _TIME_UNITS = ((1e6, "Myr"), (1e3, "kyr"), (1.0, "yr"))
 
@@ -20,6 +26,25 @@ _TIME_UNITS = ((1e6, "Myr"), (1e3, "kyr"), (1.0, "yr"))
 def listing(run: Run) -> list[tuple[str, ...]]:
     """Return a row of text per object, under `HEADER`."""
     return [_row(row) for row in run.objects.to_dict("records")]
+
+
+def check_listing(catalog: "Catalog") -> list[tuple[str, ...]]:
+    """Return a row of text per object of a catalogue, under `CHECK_HEADER`."""
+    from decayinfer.catalog import summary_table
+
+    return [
+        (
+            str(row["name"]),
+            index_text(
+                *(float(row[f"braking_index{end}"]) for end in ("", "_err_minus", "_err_plus", "_limit"))
+            ),
+            time_text(float(row["characteristic_age"])),
+            f"{row['field']:.2e}",
+            time_text(float(row["decay_time"])),
+            " ".join(split_flags(str(row["flags"]))),
+        )
+        for row in summary_table(catalog)
+    ]
 
 
 def flag_legend(run: Run) -> dict[str, str]:
@@ -42,11 +67,28 @@ def time_text(*years: float) -> str:
     return f"{'-'.join(f'{_digits(value / size)}' for value in years)} {unit}"
 
 
+def index_text(n: float, minus: float, plus: float, limit: float) -> str:
+    """Return a braking index with its error, or its upper limit, to the digits of the error.
+
+    Examples
+    --------
+    >>> nan = float("nan")
+    >>> index_text(43.21, 1.1, 1.1, nan), index_text(20.0, 1.0, 2.5, nan), index_text(nan, nan, nan, 30.0)
+    ('43.2 ± 1.1', '20.0 +2.5 -1.0', '< 30')
+    """
+    if not np.isfinite(n):
+        return f"< {_digits(limit)}"
+    decimals = max(0, 1 - int(np.floor(np.log10(min(minus, plus)))))
+    if minus == plus:
+        return f"{n:.{decimals}f} ± {plus:.{decimals}f}"
+    return f"{n:.{decimals}f} +{plus:.{decimals}f} -{minus:.{decimals}f}"
+
+
 def _row(row: dict[Any, Any]) -> tuple[str, ...]:
     best = f"{row['best_channel']} {row['best_probability']:.2f}" if row["best_channel"] else "none"
     return (
         row["object"],
-        _index(row),
+        index_text(row["braking_index"], row["err_minus"], row["err_plus"], row["limit"]),
         time_text(row["characteristic_age"]),
         best,
         _range(row["mass_q05"], row["mass_q95"]),
@@ -54,16 +96,6 @@ def _row(row: dict[Any, Any]) -> tuple[str, ...]:
         time_text(row["phonon_time_q05"], row["phonon_time_q95"]),
         " ".join(split_flags(row["flags"])),
     )
-
-
-def _index(row: dict[Any, Any]) -> str:
-    n, minus, plus = row["braking_index"], row["err_minus"], row["err_plus"]
-    if not np.isfinite(n):
-        return f"< {_digits(row['limit'])}"
-    decimals = max(0, 1 - int(np.floor(np.log10(min(minus, plus)))))
-    if minus == plus:
-        return f"{n:.{decimals}f} ± {plus:.{decimals}f}"
-    return f"{n:.{decimals}f} +{plus:.{decimals}f} -{minus:.{decimals}f}"
 
 
 def _range(low: float, high: float) -> str:

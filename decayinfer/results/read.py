@@ -87,6 +87,8 @@ class Run:
     def draws(self, name: str, scenario: str, channel: str) -> "DataTree":
         """Return the draws of one posterior run: groups posterior, prior and the rest.
 
+        A channel that is unreachable may have the group prior only.
+
         Parameters
         ----------
         name, scenario, channel : str
@@ -97,7 +99,7 @@ class Run:
         UnknownNameError
             If the run has no such object, scenario or channel.
         RunFolderError
-            If there are no draws, because the channel is unreachable or failed, or the file cannot be read.
+            If there are no draws, because the run failed, or the file cannot be read.
         """
         fit = self.fit(name, scenario, channel)
         if fit.draws is None:

@@ -14,6 +14,7 @@ from decayinfer.errors import InputError
 from decayinfer.inference.outcome import Status
 from decayinfer.inference.settings import FitSettings
 from decayinfer.results.files import clear_leftovers, make_folder, write_whole
+from decayinfer.results.interrupt import kept_interrupts
 from decayinfer.results.lock import run_lock
 from decayinfer.results.log import Log, log_file, stamp
 from decayinfer.results.pool import in_processes
@@ -239,6 +240,7 @@ def _work_through(
     jobs = min(jobs, len(tasks))
 
     def tick(at_work: Sequence[Task]) -> None:
+        check_interrupt()
         left = {task: task.missing for task in at_work}
         waiting = sum(missing.values()) - sum(
             missing[t.pulsar.name] - len(cells) for t, cells in left.items()
@@ -251,11 +253,12 @@ def _work_through(
             yield work_on(task, fit.fit_channel, on_start=lambda _, task=task: tick([task]))  # type: ignore[misc]
 
     finished = {}
-    for done in in_processes(tasks, jobs=jobs, tick=tick) if jobs > 1 else one_by_one():
-        finished[done.name] = done
-        missing[done.name] = 0
-        log(done.log)
-        tick(())
+    with kept_interrupts() as check_interrupt:
+        for done in in_processes(tasks, jobs=jobs, tick=tick) if jobs > 1 else one_by_one():
+            finished[done.name] = done
+            missing[done.name] = 0
+            log(done.log)
+            tick(())
     return finished
 
 

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from decayinfer.catalog.pulsar import Pulsar
 from decayinfer.inference.outcome import PARAMETERS, ChannelFit, ObjectFit, Parameter, Status
 from decayinfer.results.average import Probabilities, channel_probabilities, mix_draws
-from decayinfer.results.flags import join_flags
+from decayinfer.results.flags import join_flags, warns
 from decayinfer.results.verdict import Constraint, Interval, constraint, verdict
 
 if TYPE_CHECKING:
@@ -113,7 +113,7 @@ def _object_row(pulsar: Pulsar, probabilities: Probabilities, averaged: Mapping[
 def _object_flags(pulsar: Pulsar, probabilities: Probabilities, mass: Constraint) -> set[str]:
     flags = set(pulsar.flags)
     for fit, p in zip(probabilities.fits, probabilities.values, strict=True):
-        flags |= set(fit.flags) if p >= _MATTERS else set()
+        flags |= {flag for flag in fit.flags if warns(flag)} if p >= _MATTERS else set()
     statuses = [fit.status for fit in probabilities.fits]
     if Status.FAILED in statuses:
         flags.add("failed")
@@ -150,6 +150,8 @@ def _channel_row(probabilities: Probabilities, k: int) -> Row:
 
 
 def _run_rows(fit: ChannelFit, mixing: _MixingOf) -> list[Row]:
+    if fit.status is not Status.OK:
+        return []
     return [
         _parameter_row(
             (fit.name, fit.scenario, fit.channel),
@@ -215,7 +217,7 @@ def _quantiles(draws: _Floats) -> dict[str, float]:
 
 def _mixing(fit: ChannelFit) -> _MixingOf:
     """Return the mixing of every parameter that a run reports; a constant has none."""
-    if fit.draws is None:
+    if fit.draws is None or "posterior" not in fit.draws:
         return {}
     import arviz as az
 
@@ -225,8 +227,10 @@ def _mixing(fit: ChannelFit) -> _MixingOf:
     if not varying:
         return {name: _Mixing() for name in names}
     ess, r_hat = az.ess(posterior[varying], method="bulk"), az.rhat(posterior[varying])
+    # Draws resampled from importance weights repeat, and are worth no more than the weights.
+    cap = fit.ess_bulk_min if "topped-up" in fit.flags else np.inf
     return {
-        name: _Mixing(float(ess[name]), float(r_hat[name])) if name in varying else _Mixing()
+        name: _Mixing(min(float(ess[name]), cap), float(r_hat[name])) if name in varying else _Mixing()
         for name in names
     }
 

@@ -84,7 +84,9 @@ class Stopped(Exception):  # noqa: N818 - a request, not an error
 
 
 def drop_unusable(task: Task) -> list[str]:
-    """Delete files that a resumed run must not take over: damaged, of other inputs, or of failed runs.
+    """Delete files that a resumed run must not take over: damaged, of other inputs, or failed without draws.
+
+    A run that failed with draws did not converge, and would not the next time.
 
     Returns
     -------
@@ -199,7 +201,7 @@ def _unusable(path: Path, expected: str) -> str:
         return f"its file is damaged ({error})"
     if header["fingerprint"] != expected:
         return "its file was made from other inputs"
-    return "it failed before" if header["status"] == Status.FAILED else ""
+    return "it failed before" if header["status"] == Status.FAILED and not header["drawn"] else ""
 
 
 def _fingerprint(task: Task, cell: Cell) -> str:

@@ -28,8 +28,8 @@ def test_help_names_every_command(run):
 def test_check_shows_what_follows_from_the_table(run, table):
     result = run("check", table(GOOD))
     assert result.exit_code == 0
-    assert "characteristic_age" in result.stdout
-    assert "63376" in result.stdout  # P / (2 Pdot) in years
+    assert "63.4 kyr" in result.stdout  # P / (2 Pdot)
+    assert "14.9 kyr" in result.stdout  # 4 tau_c / (n - 3)
     assert "1 objects can be fitted, 0 rows set aside" in result.stdout
 
 

@@ -1,12 +1,14 @@
 """A stand-in for the sampler: instant, deterministic, and able to misbehave on demand.
 
-The name of an object says how its runs end: ``unreachable``, ``broken`` (an exception), ``panic`` (an
+The name of an object says how its runs end: ``unreachable``, ``stuck`` (did not
+converge), ``broken`` (an exception), ``panic`` (an
 exception that is no Exception), ``killer`` (the process dies), anything else ok.
 """
 
 import hashlib
 import os
 import time
+from dataclasses import replace
 
 import numpy as np
 from xarray import Dataset, DataTree
@@ -38,9 +40,11 @@ def fit_channel(pulsar, channel, scenario, settings):
         raise PanicError("deep trouble")
     if pulsar.name.startswith("unreachable") or channel == "constant":
         reason = "n lies 12 standard deviations from what the channel can give"
-        return ChannelFit(
-            *labels, Status.UNREACHABLE, reason=reason, ln_evidence=-np.inf, ln_evidence_err=0.0
-        )
+        prior = DataTree.from_dict({"prior": _made_up(labels, settings).draws["prior"].dataset})
+        evidence = {"ln_evidence": -np.inf, "ln_evidence_err": 0.0}
+        return ChannelFit(*labels, Status.UNREACHABLE, reason=reason, **evidence, draws=prior)
+    if pulsar.name.startswith("stuck"):
+        return replace(_made_up(labels, settings), status=Status.FAILED, reason="did not converge")
     return _made_up(labels, settings)
 
 

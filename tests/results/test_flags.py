@@ -4,7 +4,7 @@ import pytest
 
 from decayinfer import catalog
 from decayinfer.errors import UnknownNameError
-from decayinfer.results.flags import FLAGS, describe, join_flags, split_flags
+from decayinfer.results.flags import FLAGS, describe, join_flags, split_flags, warns
 
 
 def test_every_flag_says_what_it_means_and_what_to_do():
@@ -30,3 +30,8 @@ def test_flags_join_in_the_order_of_the_registry_and_split_again():
     assert text == "no-channel,failed,old,zebra"
     assert split_flags(text) == ("no-channel", "failed", "old", "zebra")
     assert split_flags(join_flags([])) == ()
+
+
+def test_remarks_of_a_run_are_no_flags_of_its_object():
+    assert warns("poor-mixing")
+    assert not warns("retried")

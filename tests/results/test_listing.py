@@ -3,9 +3,16 @@
 import numpy as np
 import pytest
 
-from decayinfer.results import listing as module
 from decayinfer.results.flags import FLAGS
-from decayinfer.results.listing import HEADER, flag_legend, listing, time_text
+from decayinfer.results.listing import (
+    CHECK_HEADER,
+    HEADER,
+    check_listing,
+    flag_legend,
+    index_text,
+    listing,
+    time_text,
+)
 from decayinfer.results.read import read_run
 from decayinfer.results.run import run_fit
 
@@ -31,12 +38,21 @@ def test_a_row_per_object(tmp_path, engine, catalogue, settings):
     ],
 )
 def test_index_has_the_digits_of_its_error(n, minus, plus, text):
-    assert module._index({"braking_index": n, "err_minus": minus, "err_plus": plus, "limit": np.nan}) == text
+    assert index_text(n, minus, plus, np.nan) == text
 
 
 def test_an_upper_limit_is_shown_as_one():
-    row = {"braking_index": np.nan, "err_minus": np.nan, "err_plus": np.nan, "limit": 30.0}
-    assert module._index(row) == "< 30"
+    assert index_text(np.nan, np.nan, np.nan, 30.0) == "< 30"
+
+
+def test_a_catalogue_in_short(catalogue):
+    row = dict(zip(CHECK_HEADER, check_listing(catalogue("A"))[0], strict=True))
+    # tau_c = 0.2 s / (2 5e-14) = 2e12 s; decay time 4 tau_c / 17; B = 3.2e19 G (P Pdot)^(1/2)
+    assert (row["tau_c"], row["decay time 4 tau_c/(n - 3)"], row["B [G]"]) == (
+        "63.4 kyr",
+        "14.9 kyr",
+        "3.20e+12",
+    )
 
 
 def test_times():

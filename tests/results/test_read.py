@@ -35,9 +35,16 @@ def test_draws_are_those_of_the_tables(run):
     assert row["mean"] == pytest.approx(float(posterior["mass"].mean()), rel=1e-9)
 
 
-def test_runs_without_draws_say_why(run):
-    with pytest.raises(RunFolderError, match=r"no draws for phonon in candle: unreachable \(n lies 12"):
-        run.draws("unreachable", "candle", "phonon")
+def test_unreachable_runs_keep_their_prior(run):
+    assert set(run.draws("unreachable", "candle", "phonon").children) == {"prior"}
+
+
+def test_runs_without_draws_say_why(tmp_path, engine, catalogue, settings):
+    run = read_run(run_fit(catalogue("broken"), tmp_path / "run", settings).path)
+    with pytest.raises(
+        RunFolderError, match=r"no draws for phonon in candle: failed \(ValueError: the sampler"
+    ):
+        run.draws("broken", "candle", "phonon")
 
 
 @pytest.mark.parametrize(

@@ -113,6 +113,19 @@ def test_failed_runs_are_rows_and_are_tried_again(tmp_path, engine, catalogue, s
     assert len(engine.calls) == 12
 
 
+def test_runs_that_did_not_converge_keep_their_draws_and_are_not_tried_again(
+    tmp_path, engine, catalogue, settings
+):
+    run_fit(catalogue("stuck"), tmp_path / "run", settings)
+    run = read_run(tmp_path / "run")
+    assert set(run.channels.status) == {"failed", "unreachable"}
+    assert run.draws("stuck", "candle", "phonon")["posterior"].sizes["draw"] == 100
+    assert len(run.parameters) == 0
+    engine.calls.clear()
+    run_fit(catalogue("stuck"), tmp_path / "run", settings)
+    assert engine.calls == []
+
+
 def test_an_object_without_summary_is_failed_not_fatal(tmp_path, engine, catalogue, settings, monkeypatch):
     fit = engine.fit_channel
 

@@ -1,5 +1,7 @@
 """Rows of the tables against the draws they come from."""
 
+from dataclasses import replace
+
 import arviz as az
 import numpy as np
 import pytest
@@ -100,12 +102,36 @@ def test_mixing_of_an_average(random, settings):
     assert row["r_hat"] == max(float(az.rhat(x, chain_axis=0, draw_axis=1)) for x in (a, b))
 
 
+def test_draws_resampled_from_weights_count_no_more_than_the_weights(random, settings):
+    draws = {"mass": random.normal(1.4, 0.1, (2, 500))}
+    found = {}
+    for flag in ("retried", "topped-up"):
+        fit = replace(run("hall", 0.0, draws, flags=(flag,)), ess_bulk_min=450.0)
+        rows = summarise(PULSAR, ObjectFit("A", (fit,), {"s": 1.0}), settings)
+        found[flag] = rows_of(rows.parameters, channel="hall")["ess_bulk"]
+    assert found["retried"] > 600.0
+    assert found["topped-up"] == 450.0
+
+
+def test_the_averaged_prior_counts_unreachable_channels(settings):
+    low, high = {"mass": np.full((2, 100), 1.2)}, {"mass": np.full((2, 100), 1.6)}
+    far = run("hall", -np.inf, low)
+    far = replace(
+        far, status=Status.UNREACHABLE, draws=DataTree.from_dict({"prior": far.draws["prior"].dataset})
+    )
+    rows = summarise(PULSAR, ObjectFit("A", (far, run("phonon", 0.0, high)), {"s": 1.0}), settings)
+    row = rows_of(rows.parameters, scenario="averaged", channel="averaged")
+    assert (row["prior_q05"], row["prior_q95"]) == (1.2, 1.6)
+    assert (row["q05"], row["q95"]) == (1.6, 1.6)
+
+
 def test_flags_of_runs_that_matter_reach_the_object(random, settings):
     mass = {"mass": random.normal(1.4, 0.1, (2, 100))}
     fits = (
         run("hall", 0.0, mass),
         run("phonon", -2.0, mass, flags=("poor-mixing",)),
         run("impurity", -9.0, mass, flags=("evidence-noisy",)),
+        run("impurity+hall", 0.0, mass, flags=("retried", "topped-up")),
         ChannelFit("A", "s", "constant", Status.FAILED, reason="why"),
     )
     rows = summarise(PULSAR, ObjectFit("A", fits, {"s": 1.0}), settings)
