@@ -16,7 +16,6 @@ from concurrent.futures import ProcessPoolExecutor
 from pathlib import Path
 
 import numpy as np
-from numpy.polynomial import chebyshev
 from numpy.typing import NDArray
 
 from decayinfer.cooling import form
@@ -28,6 +27,7 @@ from decayinfer.cooling.matter import SYMMETRY_ENERGIES, direct_urca_mass
 from decayinfer.cooling.recipes import RECIPES, Recipe
 from decayinfer.cooling.scenario import Scenario, write_scenario
 from decayinfer.cooling.stars import stars_of_mass
+from decayinfer.cooling.structure_fit import fit_structure
 from decayinfer.errors import UnknownNameError
 
 __all__ = ["build_scenario", "left_out_error", "main", "solve_histories"]
@@ -62,16 +62,7 @@ def solve_histories(eos: EquationOfState, physics: Microphysics, grid: Grid, *, 
 def build_scenario(recipe: Recipe, *, starts: int = 20) -> Scenario:
     """Solve and fit one scenario; its errors are measured at masses and ages left out of the fit."""
     fit = _fit(recipe, starts)
-    masses = np.linspace(*form.MASS_RANGE, 41)
-    stars = stars_of_mass(get_eos(recipe.eos), masses)
-    radius = np.log([star.radius for star in stars])
-    inertia = np.log([star.moment_of_inertia for star in stars])
-    m = (masses - 1.5) / 0.5
-    rows = [np.asarray(chebyshev.chebfit(m, y, form.DEGREE), dtype=float) for y in (radius, inertia)]
-    structure = {
-        key: float(np.max(np.abs(np.expm1(chebyshev.chebval(m, row) - y))))
-        for key, row, y in zip(("radius", "inertia"), rows, (radius, inertia), strict=True)
-    }
+    ln_radius, ln_inertia, structure = fit_structure(get_eos(recipe.eos))
     return Scenario(
         name=recipe.name,
         title=recipe.title,
@@ -87,8 +78,8 @@ def build_scenario(recipe: Recipe, *, starts: int = 20) -> Scenario:
         fit_error=left_out_error(recipe, fit) | structure,
         table=fit.table,
         scalars=fit.scalars,
-        ln_radius=rows[0],
-        ln_inertia=rows[1],
+        ln_radius=ln_radius,
+        ln_inertia=ln_inertia,
     )
 
 
@@ -102,7 +93,7 @@ def _fit(recipe: Recipe, starts: int) -> Fit:
         target,
         sigmoid_terms=2 if rich else 1,
         exponential_term=rich,
-        tolerance=(0.05, 0.25) if recipe.superfluidity == "triplet" else (0.01, 0.05),
+        tolerance=(0.03, 0.25) if recipe.superfluidity == "triplet" else (0.01, 0.05),
         starts=2 * starts if rich else starts,
     )
     if not recipe.direct_urca:

@@ -29,7 +29,7 @@ URCA_WIDTH = (
 )
 FAST_DEGREE = 1  #: degree in mass of the direct-Urca branch
 YOUNGEST = 1e3  #: errors count from this age [yr]; the fit itself starts earlier
-NARROWEST = float(np.log(0.15))  #: least width of a feature in the clock x [ln]
+NARROWEST = float(np.log(0.1))  #: least width of a feature in the clock x [ln]
 _STIFF = 3.0  # residual per e-fold below the least width
 _POLISHED = 5  # starts that are refined on the full grid
 _RIDGE = 3e-3  # holds coefficients that the data leave free near their start
