@@ -64,7 +64,7 @@ FLAGS = {
         ),
         Flag(
             "topped-up",
-            "The chains mixed poorly but the importance weights were good, so the draws come from the weights.",
+            "The chains mixed poorly but the importance weights were good; draws come from the weights.",
             "Nothing to do; effective sample sizes count the weights.",
             warns=False,
         ),

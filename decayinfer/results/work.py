@@ -11,7 +11,7 @@ from decayinfer.cooling.registry import load_scenario
 from decayinfer.errors import RunFolderError
 from decayinfer.inference.outcome import ChannelFit, ObjectFit, Status
 from decayinfer.inference.settings import FitSettings
-from decayinfer.results.draws import draws_path, fingerprint, load_channel_fit, read_header, save_channel_fit
+from decayinfer.results.draws import draws_path, fingerprint, load_reported, read_header, save_channel_fit
 from decayinfer.results.log import LOG, collect_lines, stamp
 from decayinfer.results.summary import ObjectRows, summarise
 
@@ -173,11 +173,11 @@ def _detail(fit: ChannelFit) -> str:
 def _load(task: Task, cell: Cell, fitter: Fitter) -> ChannelFit:
     """Read a posterior run back; if its file is damaged, make it once more."""
     try:
-        return load_channel_fit(task.path(cell))
+        return load_reported(task.path(cell))
     except RunFolderError as error:
         LOG.warning("%s: done again, for %s", _label(task, cell), error)
         _fit_and_save(task, cell, fitter)
-        return load_channel_fit(task.path(cell))
+        return load_reported(task.path(cell))
 
 
 def _rows(task: Task, fits: tuple[ChannelFit, ...]) -> ObjectRows:

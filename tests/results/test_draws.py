@@ -18,6 +18,7 @@ from decayinfer.results.draws import (
     draws_path,
     fingerprint,
     load_channel_fit,
+    load_reported,
     read_header,
     safe_name,
     save_channel_fit,
@@ -38,6 +39,20 @@ def test_round_trip_of_numbers_and_draws(tmp_path, engine, settings):
         np.testing.assert_array_equal(back.draws["posterior"][name].values, values.values)
     assert read_header(path)["fingerprint"] == "abc"
     assert "decayinfer" not in fit.draws.attrs
+
+
+def test_the_quick_reading_is_the_full_one_in_part(tmp_path, engine, settings):
+    fit = engine.fit_channel(PULSAR, "phonon+hall", "candle", settings)
+    fit.draws["posterior"] = fit.draws["posterior"].dataset.assign(
+        coordinates=(("chain", "draw", "k"), np.ones((2, 100, 8)))
+    )
+    save_channel_fit(tmp_path / "x.nc", fit)
+    quick, full = load_reported(tmp_path / "x.nc"), load_channel_fit(tmp_path / "x.nc")
+    assert quick == full
+    assert set(quick.draws.children) == {"posterior", "prior"}
+    for group in quick.draws.children:
+        reported = full.draws[group].dataset.drop_vars("coordinates", errors="ignore")
+        assert quick.draws[group].dataset.equals(reported)
 
 
 def test_round_trip_without_draws(tmp_path):

@@ -81,7 +81,7 @@ def test_damage_behind_an_intact_header_is_made_again(
     """The header reads, the draws do not: found only when the tables are made."""
     from decayinfer.results import work
 
-    load, broken = work.load_channel_fit, []
+    load, broken = work.load_reported, []
 
     def fail_once(path):
         if path.name == "candle__phonon.nc" and path.parent.name == "A" and not broken:
@@ -89,7 +89,7 @@ def test_damage_behind_an_intact_header_is_made_again(
             raise RunFolderError("bad sector")
         return load(path)
 
-    monkeypatch.setattr(work, "load_channel_fit", fail_once)
+    monkeypatch.setattr(work, "load_reported", fail_once)
     run_fit(catalogue("A", "B"), tmp_path / "whole", settings)
     assert engine.calls == [("A", "candle", "phonon")]
     assert table_bytes(tmp_path / "whole") == whole
