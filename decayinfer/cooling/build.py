@@ -34,6 +34,7 @@ __all__ = ["build_scenario", "left_out_error", "main", "solve_histories"]
 
 type Array = NDArray[np.float64]
 
+FOLDER = Path(__file__).parent / "data" / "computed"  #: where the data files of the package are
 _LOG = logging.getLogger(__name__)
 _AGES = np.geomspace(300.0, 1e7, 121)
 _MASSES = np.linspace(*form.MASS_RANGE, 31)
@@ -158,7 +159,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
     parser.add_argument("names", nargs="*", metavar="NAME", help="scenarios to make; all when none is given")
     parser.add_argument("--jobs", type=int, default=2, choices=(1, 2), help="processes")
     parser.add_argument(
-        "--out", type=Path, default=Path(__file__).parent / "data", help="folder of the data files"
+        "--out", type=Path, default=FOLDER, help="folder of the data files"
     )
     chosen = parser.parse_args(arguments)
     unknown = [name for name in chosen.names if name not in RECIPES]
