@@ -11,13 +11,14 @@ from decayinfer.channels.base import Channel
 from decayinfer.channels.registry import channel_names, load_channel
 from decayinfer.cooling.registry import load_scenario, scenario_names
 from decayinfer.errors import SamplingError
+from decayinfer.inference.coordinates import ln_index_excess
 from decayinfer.inference.density import evaluate
 from decayinfer.inference.explore import Exploration, explore
 from decayinfer.inference.importance import rewarp
 from decayinfer.inference.measurement import total_error
 from decayinfer.inference.outcome import ChannelFit, ObjectFit, Status
 from decayinfer.inference.problem import Problem, make_problem
-from decayinfer.inference.report import data_tree, parameters
+from decayinfer.inference.report import data_tree
 from decayinfer.inference.seeds import named_seeds
 from decayinfer.inference.settings import FitSettings
 
@@ -158,10 +159,10 @@ def _fit(
 def _out_of_reach(problem: Problem, channel: Channel, prior: Exploration, settings: FitSettings) -> str:
     """Say why a channel cannot give the index, or nothing when it can."""
     observed, minus, plus, limit = problem.index
-    predicted = parameters(prior.points, problem.without_index(), channel)["braking_index"]
+    highest = float(ln_index_excess(list(np.moveaxis(prior.points, -1, 0)), problem.without_index()).max())
     margin = REACH * total_error(minus, plus, settings.priors.scatter_sd)
     low = 3.0  # decay only adds to the index of a constant dipole
-    high = float(predicted.max())
+    high = low + float(np.exp(highest)) if channel.decays else low
     what = "limit" if limit else "index"
     if observed < low - margin:
         return f"{what} {observed:g} lies more than {REACH:g} total errors below 3, the least this channel gives"

@@ -9,7 +9,8 @@ from numpy.typing import NDArray
 from xarray import DataTree
 
 from decayinfer.channels.base import Channel
-from decayinfer.inference.density import evaluate
+from decayinfer.cooling.form import ln_temperature
+from decayinfer.inference.density import Evaluation, evaluate
 from decayinfer.inference.explore import Exploration
 from decayinfer.inference.problem import COORDINATES, Problem
 from decayinfer.physics import torque
@@ -22,13 +23,13 @@ type Array = NDArray[np.float64]
 SCHEMA = "1"  #: major version of the layout of stored draws
 
 
-def parameters(points: Array, problem: Problem, channel: Channel) -> dict[str, Array]:
+def parameters(evaluation: Evaluation, problem: Problem, channel: Channel) -> dict[str, Array]:
     """Return the parameters that a channel reports, in the units of `decayinfer.inference.outcome.PARAMETERS`.
 
     Parameters
     ----------
-    points : (..., 8) array
-        Coordinates.
+    evaluation : Evaluation
+        Physical parameters of n points.
     problem : Problem
         The numbers of the problem.
     channel : Channel
@@ -36,15 +37,10 @@ def parameters(points: Array, problem: Problem, channel: Channel) -> dict[str, A
 
     Returns
     -------
-    dict of str to array
-        Each of the shape of ``points`` without its last axis.
+    dict of str to (n,) array
     """
-    shape = points.shape[:-1]
-    evaluation = evaluate(points.reshape(-1, points.shape[-1]), problem)
     p = evaluation.physical
     age_yr, tau_c = np.exp(p.ln_age), np.exp(problem.spin[2])
-    from decayinfer.cooling.form import ln_temperature
-
     with np.errstate(over="ignore", divide="ignore"):  # parameters of a channel that is off overflow
         every = {
             "mass": p.mass,
@@ -62,7 +58,7 @@ def parameters(points: Array, problem: Problem, channel: Channel) -> dict[str, A
             "share_phonon": p.share_phonon,
             "share_hall": p.share_hall,
         }
-    return {name: np.broadcast_to(every[name], (int(np.prod(shape)),)).reshape(shape) for name in channel.parameters}
+    return {name: np.broadcast_to(every[name], age_yr.shape) for name in channel.parameters}
 
 
 def data_tree(
@@ -75,18 +71,19 @@ def data_tree(
     """
     import arviz as az
 
+    without = problem.without_index()
     groups: dict[str, dict[str, Array]] = {
-        "prior": _variables(prior.points, problem.without_index(), channel),
+        "prior": _variables(prior.points, _evaluated(prior.points, without), without, channel),
         "prior_sample_stats": {"diverging": prior.diverging},
         "observed_data": {"braking_index": np.asarray(problem.index[0])},
     }
     if posterior is not None:
         shape = posterior.points.shape[:2]
-        evaluation = evaluate(posterior.points.reshape(-1, posterior.points.shape[-1]), problem)
+        evaluation = _evaluated(posterior.points, problem)
         likelihood = evaluation.ln_likelihood.reshape(shape)
         ln_prior = evaluation.ln_prior.reshape(shape)
         groups |= {
-            "posterior": _variables(posterior.points, problem, channel),
+            "posterior": _variables(posterior.points, evaluation, problem, channel),
             "sample_stats": {"diverging": posterior.diverging, "lp": likelihood + ln_prior},
             "log_likelihood": {"braking_index": likelihood},
             "log_prior": {"all_coordinates": ln_prior},
@@ -96,8 +93,13 @@ def data_tree(
     return tree
 
 
-def _variables(points: Array, problem: Problem, channel: Channel) -> dict[str, Array]:
-    return {"coordinates": points} | parameters(points, problem, channel)
+def _evaluated(points: Array, problem: Problem) -> Evaluation:
+    return evaluate(points.reshape(-1, points.shape[-1]), problem)
+
+
+def _variables(points: Array, evaluation: Evaluation, problem: Problem, channel: Channel) -> dict[str, Array]:
+    flat = parameters(evaluation, problem, channel)
+    return {"coordinates": points} | {name: values.reshape(points.shape[:2]) for name, values in flat.items()}
 
 
 def _versions() -> dict[str, str]:
