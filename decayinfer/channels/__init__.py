@@ -1,0 +1,1 @@
+"""Channels: one explanation of the secular braking index each."""

@@ -20,7 +20,7 @@ def _sums() -> tuple[Channel, ...]:
     for size in range(1, len(_PROCESSES) + 1):
         for acting in combinations(_PROCESSES, size):
             title = " and ".join(_PROCESSES[name] for name in acting)
-            made.append(Channel(name="+".join(acting), title=title, **dict.fromkeys(acting, True)))  # type: ignore[arg-type]
+            made.append(Channel(name="+".join(acting), title=title, **dict.fromkeys(acting, True)))
     return tuple(made)
 
 

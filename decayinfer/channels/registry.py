@@ -6,7 +6,7 @@ from decayinfer.errors import UnknownNameError
 
 __all__ = ["channel_names", "load_channel"]
 
-_CHANNELS = {channel.name: channel for module in (decay,) for channel in module.CHANNELS}
+_CHANNELS: dict[str, Channel] = {channel.name: channel for module in (decay,) for channel in module.CHANNELS}
 
 
 def channel_names() -> tuple[str, ...]:

@@ -1,0 +1,1 @@
+"""Crust temperatures: stars, thermal evolution, and scenarios in one closed form with coefficients as data."""

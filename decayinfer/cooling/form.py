@@ -98,7 +98,9 @@ def ln_temperature(ln_age: Any, mass: Any, table: Any, scalars: Any) -> Any:
         opening = _softplus(xp, (mass - named["urca_mass"]) / named["urca_width"])
         fast = _branch(xp, x, mass, table[1], named) - named["urca_slope"] * xp.log(opening)
         cold = -xp.logaddexp(-p * cold, -p * fast) / p
-    return named["ln_floor"] + xp.logaddexp(0.0, FLOOR_SHARPNESS * (cold - named["ln_floor"])) / FLOOR_SHARPNESS
+    return (
+        named["ln_floor"] + xp.logaddexp(0.0, FLOOR_SHARPNESS * (cold - named["ln_floor"])) / FLOOR_SHARPNESS
+    )
 
 
 def _branch(xp: Any, x: Any, mass: Any, rows: Any, named: dict[str, float]) -> Any:

@@ -34,12 +34,14 @@ SOURCES = (
 )
 
 
-def candle_temperature(mass: NDArray[np.float64], age: float, relative_rate: float) -> NDArray[np.float64]:
+def candle_temperature(
+    mass: NDArray[np.float64], age: float | NDArray[np.float64], relative_rate: float
+) -> NDArray[np.float64]:
     """Return the local temperature [1e8 K] of a star in its neutrino era at an age [yr]."""
     redshift = structure.redshift_factor(mass, RADIUS_KM)
     size = 1.0 + 0.12 * (RADIUS_KM / 10.0) ** 2
-    cooled: NDArray[np.float64] = redshift * size * (CANDLE_AGE / age / relative_rate) ** (1.0 / 6.0)
-    return CANDLE_TEMPERATURE_8 * cooled
+    cooled = redshift * size * (CANDLE_AGE / age / relative_rate) ** (1.0 / 6.0)
+    return np.asarray(CANDLE_TEMPERATURE_8 * cooled)
 
 
 def photon_time(mass: NDArray[np.float64], temperature_8: NDArray[np.float64]) -> NDArray[np.float64]:
@@ -50,7 +52,7 @@ def photon_time(mass: NDArray[np.float64], temperature_8: NDArray[np.float64]) -
     luminosity = area * STEFAN_BOLTZMANN_CGS * surface**4 * redshift**2
     internal = redshift * temperature_8 * constants.T_UNIT_K
     heat_capacity = HEAT_CAPACITY_39 * 1e39 * mass * internal / 1e9
-    return PHOTON_SLOPE * heat_capacity * internal / luminosity / constants.YEAR_S
+    return np.asarray(PHOTON_SLOPE * heat_capacity * internal / luminosity / constants.YEAR_S)
 
 
 def provisional_scenario(name: str, relative_rate: float, title: str) -> Scenario:
@@ -91,11 +93,15 @@ def write_provisional(folder: Path) -> None:
     """Write the data files of the provisional scenarios into a folder."""
     for name, rate, title in (
         ("candle", 1.0, "Provisional: standard neutrino candle, iron envelope"),
-        ("slow-candle", 0.02, "Provisional: neutrino cooling fifty times slower than the candle, iron envelope"),
+        (
+            "slow-candle",
+            0.02,
+            "Provisional: neutrino cooling fifty times slower than the candle, iron envelope",
+        ),
     ):
         write_scenario(provisional_scenario(name, rate, title), folder / f"{name}.toml")
 
 
 def _polynomial(mass: NDArray[np.float64], values: NDArray[np.float64]) -> NDArray[np.float64]:
-    fitted: NDArray[np.float64] = chebyshev.chebfit((mass - 1.5) / 0.5, values, form.DEGREE)
+    fitted = np.asarray(chebyshev.chebfit((mass - 1.5) / 0.5, values, form.DEGREE), dtype=np.float64)
     return np.where(np.abs(fitted) < 1e-14, 0.0, fitted)

@@ -115,7 +115,9 @@ def read_scenario(path: Path) -> Scenario:
             ln_inertia=_padded(raw["structure"]["ln_inertia"]),
         )
     except (KeyError, ValueError, tomllib.TOMLDecodeError) as error:
-        raise InputError(f"{path.name}: not a cooling scenario: {error!r}; write it with write_scenario") from error
+        raise InputError(
+            f"{path.name}: not a cooling scenario: {error!r}; write it with write_scenario"
+        ) from error
 
 
 def write_scenario(scenario: Scenario, path: Path) -> None:
@@ -131,12 +133,21 @@ def write_scenario(scenario: Scenario, path: Path) -> None:
     lines += ["", "[fit_error]", *(f"{k} = {float(v)!r}" for k, v in scenario.fit_error.items())]
     lines += ["", "[scalars]"]
     lines += [f"{k} = {float(v)!r}" for k, v in zip(form.SCALARS, scenario.scalars, strict=True)]
-    lines += ["", "[structure]", f"ln_radius = {_row(scenario.ln_radius)}", f"ln_inertia = {_row(scenario.ln_inertia)}"]
+    lines += [
+        "",
+        "[structure]",
+        f"ln_radius = {_row(scenario.ln_radius)}",
+        f"ln_inertia = {_row(scenario.ln_inertia)}",
+    ]
     for branch, key in enumerate(("slow", "fast")):
         rows = scenario.table[branch]
         if np.any(rows):
             lines += ["", f"[{key}]"]
-            lines += [f"{name} = {_row(row)}" for name, row in zip(form.PARAMETERS, rows, strict=True) if np.any(row)]
+            lines += [
+                f"{name} = {_row(row)}"
+                for name, row in zip(form.PARAMETERS, rows, strict=True)
+                if np.any(row)
+            ]
     path.write_text("\n".join(lines) + "\n", encoding="utf-8")
 
 

@@ -1,0 +1,1 @@
+"""From one object to its posterior: coordinates, history kernel, model, sampling, evidence."""

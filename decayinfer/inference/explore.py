@@ -6,6 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from decayinfer.inference.density import evaluate
+from decayinfer.inference.diagnostics import bulk_ess, r_hat, tail_ess
 from decayinfer.inference.engine import NutsRun, engine
 from decayinfer.inference.importance import Weighted, importance_sample
 from decayinfer.inference.problem import Problem
@@ -112,7 +113,12 @@ def explore(
 
 
 def _attempt(
-    problem: Problem, settings: FitSettings, seeds: np.random.SeedSequence, wider: Array | None, *, longer: bool
+    problem: Problem,
+    settings: FitSettings,
+    seeds: np.random.SeedSequence,
+    wider: Array | None,
+    *,
+    longer: bool,
 ) -> Exploration:
     stretch = 4 if longer else 1
     rng = np.random.default_rng(seeds)
@@ -153,7 +159,13 @@ def _topped_up(
     worth = weighted.effective_size
     quality = Quality(min(found.ess_bulk, worth), min(found.ess_tail, worth), found.r_hat, 0, found.draws)
     return Exploration(
-        points, independent.diverging, quality, weighted, run.gradients, quality.meets(STANDARD), topped_up=True
+        points,
+        independent.diverging,
+        quality,
+        weighted,
+        run.gradients,
+        quality.meets(STANDARD),
+        topped_up=True,
     )
 
 
@@ -169,14 +181,11 @@ def _start(problem: Problem, rng: np.random.Generator) -> Array:
 
 
 def _quality(problem: Problem, run: NutsRun) -> Quality:
-    from arviz_stats.base import array_stats
-
     used = run.points[:, :, problem.active > 0.0]
-    axes = {"chain_axis": 0, "draw_axis": 1}
     return Quality(
-        ess_bulk=float(np.min(array_stats.ess(used, method="bulk", **axes))),
-        ess_tail=float(np.min(array_stats.ess(used, method="tail", prob=(0.05, 0.95), **axes))),
-        r_hat=float(np.max(array_stats.rhat(used, **axes))),
+        ess_bulk=float(np.min(bulk_ess(used))),
+        ess_tail=float(np.min(tail_ess(used))),
+        r_hat=float(np.max(r_hat(used))),
         divergences=int(run.diverging.sum()),
         draws=run.diverging.size,
     )

@@ -165,7 +165,9 @@ def _out_of_reach(problem: Problem, channel: Channel, prior: Exploration, settin
     high = low + float(np.exp(highest)) if channel.decays else low
     what = "limit" if limit else "index"
     if observed < low - margin:
-        return f"{what} {observed:g} lies more than {REACH:g} total errors below 3, the least this channel gives"
+        return (
+            f"{what} {observed:g} lies more than {REACH:g} total errors below 3, the least this channel gives"
+        )
     if observed > high + margin and not limit:
         return (
             f"index {observed:g} lies more than {REACH:g} total errors above {high:.4g}, "

@@ -53,7 +53,7 @@ class Today(NamedTuple):
 
     period: Array
     period_derivative: Array
-    index: Array
+    braking_index: Array
     field: Array
     rate_phonon: Array
     rate_impurity: Array
@@ -80,7 +80,7 @@ def draw_prior(n: int, priors: Priors, rng: np.random.Generator) -> PriorDraws:
     mass = truncnorm.rvs(low, high, loc=priors.mass_mean, scale=priors.mass_sd, size=n, random_state=rng)
     means, sds = priors.normals()
     logs = means + sds * rng.standard_normal((n, means.size))
-    return PriorDraws(mass, *np.exp(logs.T), _draw_age(n, priors, rng))
+    return PriorDraws(mass, *np.exp(logs.T), _draw_age(n, priors, rng))  # type: ignore[call-arg]  # seven columns
 
 
 def evolve(draws: PriorDraws, channel: Channel, scenario: Scenario, priors: Priors) -> Today:
@@ -115,7 +115,9 @@ def _evolve(draws: PriorDraws, channel: Channel, scenario: Scenario, priors: Pri
     attractor_age = draws.attractor_times * birth_hall_time / redshift
 
     ohmic = rate_phonon + rate_impurity[:, None]
-    depth = draws.age[:, None] * np.column_stack([ohmic[:, :-1] @ _FROM_BIRTH.T, ohmic[:, :-1] @ _QUADRATURE.weights])
+    depth = draws.age[:, None] * np.column_stack(
+        [ohmic[:, :-1] @ _FROM_BIRTH.T, ohmic[:, :-1] @ _QUADRATURE.weights]
+    )
     switch = attractor_switch(ages, attractor_age[:, None])
     source = (switch * np.exp(-depth))[:, :-1]
     drifted = draws.age[:, None] * np.column_stack([source @ _FROM_BIRTH.T, source @ _QUADRATURE.weights])

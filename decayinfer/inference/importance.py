@@ -6,6 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from decayinfer.inference.density import evaluate
+from decayinfer.inference.diagnostics import pareto_k
 from decayinfer.inference.problem import Problem
 from decayinfer.inference.proposal import StudentMixture, fit_mixture
 
@@ -48,7 +49,9 @@ class Weighted:
     @property
     def ln_evidence_err(self) -> float:
         """Standard error of `ln_evidence`."""
-        return float(np.sqrt(max(self.ln_weights.size / self.effective_size - 1.0, 0.0) / self.ln_weights.size))
+        return float(
+            np.sqrt(max(self.ln_weights.size / self.effective_size - 1.0, 0.0) / self.ln_weights.size)
+        )
 
     @property
     def effective_size(self) -> float:
@@ -57,12 +60,8 @@ class Weighted:
 
     @property
     def pareto_k(self) -> float:
-        """Shape of the generalised Pareto tail of the weights (Vehtari et al. 2024, JMLR 25, 72), by ArviZ."""
-        from arviz_stats.base import array_stats
-
-        # ArviZ takes the negative: it expects log likelihoods whose inverse are the weights
-        _, k = array_stats.psislw(-self.ln_weights[np.isfinite(self.ln_weights)])
-        return float(k)
+        """Shape of the generalised Pareto tail of the weights (Vehtari et al. 2024, JMLR 25, 72)."""
+        return pareto_k(self.ln_weights)
 
     def resample(self, n: int, rng: np.random.Generator) -> Array:
         """Draw n points by their weights, systematically so that rounding adds least noise, in random order."""
@@ -96,7 +95,9 @@ def importance_sample(
     if wider is not None:
         parts = [(1.0 - _DEFENSIVE, parts[0][1]), (_DEFENSIVE, fit_mixture(wider[:, active]))]
     counts = [n - int(_DEFENSIVE * n), int(_DEFENSIVE * n)] if wider is not None else [n]
-    proposed = np.concatenate([part.sample(count, rng) for (_, part), count in zip(parts, counts, strict=True)])
+    proposed = np.concatenate(
+        [part.sample(count, rng) for (_, part), count in zip(parts, counts, strict=True)]
+    )
     ln_proposal = np.logaddexp.reduce([np.log(share) + part.ln_density(proposed) for share, part in parts])
     # a coordinate that the channel does not use is proposed from its own standard normal prior
     points = rng.standard_normal((n, problem.active.size))

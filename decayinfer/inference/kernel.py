@@ -106,7 +106,7 @@ def _scale(rows: Any, k: int, log_factor: Any) -> None:
 
 
 @njit(**_COMPILE)
-def _switch(ln_ratio: float, ln_sigma: float) -> float:
+def _switch(ln_ratio: float, ln_sigma: float) -> Any:
     """S at the age sigma t, for ln_ratio = ln(t_a/t)."""
     return 1.0 / (1.0 + np.exp(4.0 * (ln_sigma - ln_ratio)))
 
@@ -127,7 +127,9 @@ def _amplitude(k: int, theta: Any, phonon: float, q: float, eta: float, free: An
 
 
 @njit(**_COMPILE)
-def _growth(y: float, k: int, theta: Any, flags: Any, freeze: Any, values: Any, scalars: Any) -> tuple[bool, Any]:
+def _growth(
+    y: float, k: int, theta: Any, flags: Any, freeze: Any, values: Any, scalars: Any
+) -> tuple[bool, Any]:
     """Jets of ln G, J(0), ln b(0)^2, ln f now and ln A; False when the field at birth is infinite."""
     n = _SIGMA.size
     out = np.zeros((5, 1 + 2 * k))
@@ -204,11 +206,11 @@ def _growth(y: float, k: int, theta: Any, flags: Any, freeze: Any, values: Any, 
 
 
 @njit(**_COMPILE)
-def _age(theta: Any, flags: Any, freeze: Any, values: Any, scalars: Any) -> float:
+def _age(theta: Any, flags: Any, freeze: Any, values: Any, scalars: Any) -> Any:
     """Root of G(t) = tau by Halley's method inside a bracket. G >= t, so ln tau bounds y from above.
 
-    Ohmic decay alone makes ln G nearly linear in ln t. Hall drift makes 1/G nearly linear in 1/t, down to the wall where
-    the field at birth is infinite; from the early side that iteration never crosses the wall.
+    Ohmic decay alone makes ln G nearly linear in ln t. Hall drift makes 1/G nearly linear in 1/t, down to the wall
+    where the field at birth is infinite; from the early side that iteration never crosses the wall.
     """
     ln_tau = theta[0]
     low, high = -np.inf, ln_tau
@@ -245,16 +247,14 @@ def _age(theta: Any, flags: Any, freeze: Any, values: Any, scalars: Any) -> floa
 
 
 @njit(**_COMPILE)
-def _halley(newton: float, bend: float) -> float:
+def _halley(newton: float, bend: float) -> Any:
     """Improve a Newton step by the ratio of second to first derivative, where the parabola allows."""
     correction = 1.0 + 0.5 * newton * bend
     return newton / correction if correction > 0.4 else newton
 
 
 @njit(**_COMPILE)
-def _summary(
-    theta: Any, k: int, flags: Any, freeze: Any, values: Any, scalars: Any
-) -> tuple[Any, Any, bool]:
+def _summary(theta: Any, k: int, flags: Any, freeze: Any, values: Any, scalars: Any) -> tuple[Any, Any, bool]:
     """Outputs, their jets at fixed age, and whether the field decays at all."""
     result = np.full(6, np.nan)
     if flags[0] + flags[1] + flags[2] == 0.0:  # constant field: the age is tau itself

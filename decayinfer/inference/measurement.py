@@ -21,7 +21,9 @@ _RAW = _WEIGHTS * np.exp(-0.5 * SCATTER_NODES**2)
 _LN_SCATTER_WEIGHTS = np.log(_RAW / _RAW.sum())
 
 
-def ln_index_likelihood(observed: Any, index: Any, err_minus: Any, err_plus: Any, limit: Any, scatter: Any) -> Any:
+def ln_index_likelihood(
+    observed: Any, index: Any, err_minus: Any, err_plus: Any, limit: Any, scatter: Any
+) -> Any:
     """Return ln p(observed n | secular n), the scatter factor integrated out.
 
     Parameters
@@ -58,7 +60,9 @@ def total_error(err_minus: float, err_plus: float, scatter: float) -> float:
     return 0.5 * (err_minus + err_plus) * float(np.exp(1.96 * scatter))
 
 
-def sample_index(index: Any, err_minus: float, err_plus: float, scatter: float, rng: np.random.Generator) -> Any:
+def sample_index(
+    index: Any, err_minus: float, err_plus: float, scatter: float, rng: np.random.Generator
+) -> Any:
     """Draw observed indices around secular ones, (n,) to (n,)."""
     factor = np.exp(scatter * np.abs(rng.standard_normal(np.shape(index))))
     # the observed value lies below the truth with the weight of the upper error
@@ -68,7 +72,7 @@ def sample_index(index: Any, err_minus: float, err_plus: float, scatter: float, 
 
 
 def _ln_normal_cdf(xp: Any, z: Any) -> Any:
-    """ln Phi(z), accurate in the lower tail: Abramowitz & Stegun 1964, 26.2.12 beyond z = -6."""
+    """Logarithm of Phi(z), accurate in the lower tail: Abramowitz & Stegun 1964, 26.2.12 beyond z = -6."""
     near = xp.maximum(z, -6.0)
     far = xp.minimum(z, -6.0)
     s = 1.0 / far**2

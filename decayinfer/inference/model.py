@@ -29,7 +29,9 @@ def build_model(problem: Problem) -> pm.Model:
         variable ``braking_index``.
     """
     with pm.Model() as model:
-        data = {name: pm.Data(name, np.asarray(value, dtype=float)) for name, value in problem._asdict().items()}
+        data = {
+            name: pm.Data(name, np.asarray(value, dtype=float)) for name, value in problem._asdict().items()
+        }
         z = pm.CustomDist(
             "coordinates",
             *(data[name] for name in Problem._fields),
@@ -37,7 +39,8 @@ def build_model(problem: Problem) -> pm.Model:
             signature=_SIGNATURE,
             initval=np.zeros(len(COORDINATES)),
         )
-        index = 3.0 + data["active"][1] * pt.exp(ln_index_excess([z[i] for i in range(len(COORDINATES))], Problem(**data)))
+        points = [z[i] for i in range(len(COORDINATES))]
+        index = 3.0 + data["active"][1] * pt.exp(ln_index_excess(points, Problem(**data)))
         pm.CustomDist(
             "braking_index",
             index,

@@ -19,7 +19,7 @@ __all__ = ["FieldHistory", "field_history"]
 _VECTOR, _MATRIX, _CUBE = (pt.TensorType("float64", shape=(None,) * n) for n in (1, 2, 3))
 
 
-class FieldHistory(Op):  # type: ignore[misc]
+class FieldHistory(Op):
     """History summary (6,) and its Jacobian (6, 7) from inputs (7,), flags, freeze-out and cooling data.
 
     The gradient is a product with the Jacobian that the forward pass already returned, so it costs nothing

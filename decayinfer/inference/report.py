@@ -53,7 +53,8 @@ def parameters(evaluation: Evaluation, problem: Problem, channel: Channel) -> di
             "field": np.exp(p.ln_field) * B_UNIT_G,
             "braking_index": p.index + np.zeros_like(age_yr),
             "decay_time": torque.decay_time(p.index, tau_c) + np.zeros_like(age_yr),
-            "crust_temperature": np.exp(ln_temperature(p.ln_age, p.mass, problem.table, problem.scalars)) * T_UNIT_K,
+            "crust_temperature": np.exp(ln_temperature(p.ln_age, p.mass, problem.table, problem.scalars))
+            * T_UNIT_K,
             "share_impurity": p.share_impurity,
             "share_phonon": p.share_phonon,
             "share_hall": p.share_hall,
@@ -62,7 +63,11 @@ def parameters(evaluation: Evaluation, problem: Problem, channel: Channel) -> di
 
 
 def data_tree(
-    problem: Problem, channel: Channel, prior: Exploration, posterior: Exploration | None, attributes: dict[str, Any]
+    problem: Problem,
+    channel: Channel,
+    prior: Exploration,
+    posterior: Exploration | None,
+    attributes: dict[str, Any],
 ) -> DataTree:
     """Gather draws in ArviZ's schema.
 
@@ -72,7 +77,7 @@ def data_tree(
     import arviz as az
 
     without = problem.without_index()
-    groups: dict[str, dict[str, Array]] = {
+    groups: dict[str, dict[str, NDArray[Any]]] = {
         "prior": _variables(prior.points, _evaluated(prior.points, without), without, channel),
         "prior_sample_stats": {"diverging": prior.diverging},
         "observed_data": {"braking_index": np.asarray(problem.index[0])},
@@ -88,7 +93,9 @@ def data_tree(
             "log_likelihood": {"braking_index": likelihood},
             "log_prior": {"all_coordinates": ln_prior},
         }
-    tree = az.from_dict(groups, coords={"coordinate": list(COORDINATES)}, dims={"coordinates": ["coordinate"]})
+    tree: DataTree = az.from_dict(
+        groups, coords={"coordinate": list(COORDINATES)}, dims={"coordinates": ["coordinate"]}
+    )
     tree.attrs.update({"schema": SCHEMA, "versions": json.dumps(_versions()), **attributes})
     return tree
 
@@ -103,4 +110,7 @@ def _variables(points: Array, evaluation: Evaluation, problem: Problem, channel:
 
 
 def _versions() -> dict[str, str]:
-    return {name: version(name) for name in ("decayinfer", "numpy", "pymc", "pytensor", "nutpie", "numba", "arviz")}
+    return {
+        name: version(name)
+        for name in ("decayinfer", "numpy", "pymc", "pytensor", "nutpie", "numba", "arviz")
+    }

@@ -20,7 +20,8 @@ __all__ = ["simulate_table"]
 
 #: Names of the invented objects: birds of an invented marsh.
 _BIRDS = (
-    "Avocet", "Bittern", "Curlew", "Dunlin", "Egret", "Fulmar", "Godwit", "Heron", "Ibis", "Jacana", "Knot", "Lapwing",
+    "Avocet", "Bittern", "Curlew", "Dunlin", "Egret", "Fulmar", "Godwit", "Heron", "Ibis", "Jacana", "Knot",
+    "Lapwing",
 )  # fmt: skip
 _BATCH = 4000
 #: A simulated object is kept when a timing programme could have measured its index.
@@ -50,9 +51,9 @@ _COLUMNS: dict[str, tuple[str, str]] = {
 def simulate_table(n: int, seed: int = 1, settings: FitSettings | None = None) -> "Table":
     """Invent a sample.
 
-    Each object takes a channel and a cooling scenario at random from the settings, and its parameters from the priors; it
-    is kept if a timing programme could have measured it (period, characteristic age and index within plain
-    limits). The channel ``constant`` has nothing to measure beyond n = 3 and is left out unless it is the only one.
+    Each object takes a channel and a cooling scenario at random from the settings, and its parameters from the
+    priors; it is kept if a timing programme could have measured it (period, characteristic age and index within
+    plain limits). The channel ``constant`` has nothing to measure beyond n = 3: it is left out unless it is alone.
 
     Parameters
     ----------
@@ -87,13 +88,13 @@ def simulate_table(n: int, seed: int = 1, settings: FitSettings | None = None) -
     channels = settings.channels or channel_names()
     channels = tuple(name for name in channels if load_channel(name).decays) or channels
     scenarios = settings.cooling or scenario_names()
-    rows = [
-        _one(str(rng.choice(channels)), str(rng.choice(scenarios)), settings, rng) for _ in range(n)
-    ]
+    rows = [_one(str(rng.choice(channels)), str(rng.choice(scenarios)), settings, rng) for _ in range(n)]
     return _table(rows, seed)
 
 
-def _one(channel_name: str, scenario_name: str, settings: FitSettings, rng: np.random.Generator) -> dict[str, Any]:
+def _one(
+    channel_name: str, scenario_name: str, settings: FitSettings, rng: np.random.Generator
+) -> dict[str, Any]:
     channel, scenario = load_channel(channel_name), load_scenario(scenario_name)
     for _ in range(25):
         draws = draw_prior(_BATCH, settings.priors, rng)
@@ -102,7 +103,7 @@ def _one(channel_name: str, scenario_name: str, settings: FitSettings, rng: np.r
             age = torque.characteristic_age(today.period, today.period_derivative)
         kept = _within(today.period, _PERIODS) & _within(age, _AGES)
         if channel.decays:
-            kept &= _within(today.index, _INDICES)
+            kept &= _within(today.braking_index, _INDICES)
         if kept.any():
             i = int(np.argmax(kept))
             break
@@ -111,8 +112,8 @@ def _one(channel_name: str, scenario_name: str, settings: FitSettings, rng: np.r
             f"channel {channel_name} under {scenario_name} makes hardly any measurable index with these priors; "
             "choose other channels or wider priors"
         )
-    error = float(today.index[i] * rng.uniform(*_RELATIVE_ERRORS))
-    measured = sample_index(today.index[i : i + 1], error, error, settings.priors.scatter_sd, rng)[0]
+    error = float(today.braking_index[i] * rng.uniform(*_RELATIVE_ERRORS))
+    measured = sample_index(today.braking_index[i : i + 1], error, error, settings.priors.scatter_sd, rng)[0]
     nan = float("nan")
     return {
         "period": today.period[i],
@@ -121,7 +122,7 @@ def _one(channel_name: str, scenario_name: str, settings: FitSettings, rng: np.r
         "braking_index_err": error,
         "truth_channel": channel_name,
         "truth_cooling": scenario_name,
-        "truth_braking_index": today.index[i],
+        "truth_braking_index": today.braking_index[i],
         "truth_mass": draws.mass[i],
         "truth_impurity_parameter": draws.impurity_parameter[i] if channel.impurity else nan,
         "truth_phonon_time": draws.phonon_time[i] if channel.phonon else nan,
