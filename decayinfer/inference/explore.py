@@ -80,6 +80,7 @@ class Exploration:
 STANDARD = Standard()
 _PROPOSALS = 4000
 _CANDIDATES = 150
+_REFITS = 2
 
 
 def explore(
@@ -134,18 +135,24 @@ def _attempt(
     flat = run.points.reshape(-1, run.points.shape[-1])
     weighted = importance_sample(problem, flat, stretch * _PROPOSALS, rng, wider=wider)
     quality = _quality(problem, run)
-    sound = weighted.effective_size >= STANDARD.ess and weighted.pareto_k < STANDARD.pareto_k
-    converged = quality.meets(STANDARD) and sound
-    if not converged and sound:
-        # refit to the weighted draws: the first proposal inherits what made the chains mix poorly
+    converged = quality.meets(STANDARD) and _sound(weighted, STANDARD.ess)
+    for _ in range(0 if converged else _REFITS):
+        # refit to the weighted draws: the proposal inherits what made the chains mix poorly
         refitted = weighted.resample(flat.shape[0], rng)
         weighted = importance_sample(problem, refitted, 2 * stretch * _PROPOSALS, rng, wider=wider)
-        if weighted.effective_size >= 2.0 * STANDARD.ess and weighted.pareto_k < STANDARD.pareto_k:
+        if quality.meets(STANDARD) and _sound(weighted, STANDARD.ess):
+            converged = True
+            break
+        if _sound(weighted, 2.0 * STANDARD.ess):
             return _topped_up(problem, settings, run, weighted, rng)
     points, diverging = run.points[:, -settings.draws :], run.diverging[:, -settings.draws :]
     if longer and converged:
         points, diverging = run.points[:, stretch - 1 :: stretch], run.diverging[:, stretch - 1 :: stretch]
     return Exploration(points, diverging, quality, weighted, run.gradients, converged)
+
+
+def _sound(weighted: Weighted, least: float) -> bool:
+    return weighted.effective_size >= least and weighted.pareto_k < STANDARD.pareto_k
 
 
 def _topped_up(

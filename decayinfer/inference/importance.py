@@ -8,14 +8,15 @@ from numpy.typing import NDArray
 from decayinfer.inference.density import evaluate
 from decayinfer.inference.diagnostics import pareto_k
 from decayinfer.inference.problem import Problem
-from decayinfer.inference.proposal import StudentMixture, fit_mixture
+from decayinfer.inference.proposal import fit_mixture
 
 __all__ = ["Weighted", "importance_sample", "rewarp"]
 
 type Array = NDArray[np.float64]
 
 _LN_2PI = float(np.log(2.0 * np.pi))
-_DEFENSIVE = 0.1  # share of the wider proposal
+_DEFENSIVE = 0.1  # share of each of the wider proposals
+_BROADER = 1.7  # scale of the broadened copy of the fitted mixture
 
 
 @dataclass(frozen=True)
@@ -88,17 +89,20 @@ def importance_sample(
     rng : numpy.random.Generator
         Source of randomness.
     wider : (k, 8) array, optional
-        Draws of a wider density, proposed one time in ten so that a mode the draws missed can be found.
+        Draws of a wider density, proposed one time in ten so that a mode the draws missed can be found. Another tenth
+        comes from a broadened copy of the fitted mixture, which bounds the weights in its tails.
     """
     active = np.flatnonzero(problem.active)
-    parts: list[tuple[float, StudentMixture]] = [(1.0, fit_mixture(draws[:, active]))]
+    fitted = fit_mixture(draws[:, active])
+    parts = [fitted.broadened(_BROADER)]
     if wider is not None:
-        parts = [(1.0 - _DEFENSIVE, parts[0][1]), (_DEFENSIVE, fit_mixture(wider[:, active]))]
-    counts = [n - int(_DEFENSIVE * n), int(_DEFENSIVE * n)] if wider is not None else [n]
-    proposed = np.concatenate(
-        [part.sample(count, rng) for (_, part), count in zip(parts, counts, strict=True)]
-    )
-    ln_proposal = np.logaddexp.reduce([np.log(share) + part.ln_density(proposed) for share, part in parts])
+        parts.append(fit_mixture(wider[:, active]))
+    shares = [1.0 - _DEFENSIVE * len(parts)] + [_DEFENSIVE] * len(parts)
+    parts.insert(0, fitted)
+    counts = [n - int(_DEFENSIVE * n) * (len(parts) - 1)] + [int(_DEFENSIVE * n)] * (len(parts) - 1)
+    proposed = np.concatenate([part.sample(count, rng) for part, count in zip(parts, counts, strict=True)])
+    ln_parts = [np.log(share) + part.ln_density(proposed) for share, part in zip(shares, parts, strict=True)]
+    ln_proposal = np.logaddexp.reduce(ln_parts)
     # a coordinate that the channel does not use is proposed from its own standard normal prior
     points = rng.standard_normal((n, problem.active.size))
     points[:, active] = 0.0

@@ -43,6 +43,10 @@ class StudentMixture:
             total: Array = logsumexp(np.log(self.weights)[:, None] + _ln_components(self, points)[0], axis=0)
         return total
 
+    def broadened(self, scale: float) -> "StudentMixture":
+        """Return the same mixture with every component stretched about its centre."""
+        return StudentMixture(self.weights, self.means, scale * self.roots)
+
     def sample(self, n: int, rng: np.random.Generator) -> Array:
         """Draw n points, (n, d)."""
         d = self.means.shape[1]
@@ -53,7 +57,7 @@ class StudentMixture:
         return moved
 
 
-def fit_mixture(draws: Array, components: int = 3) -> StudentMixture:
+def fit_mixture(draws: Array, components: int = 4) -> StudentMixture:
     """Fit a mixture to draws.
 
     Parameters
