@@ -6,7 +6,7 @@ the coordinates, P and Pdot. The prior lives on the physical parameters; the cha
 
 .. math::
 
-    \ln|J| = -J(0) - \ln w(0) + \ln 2\tau_c - \ln(dF/dt) + \ln(1 - P_0/P)
+    \ln|J| = -J(0) - \ln w(0) + \ln\tau_c - \ln(dF/dt) + \ln(1 - P_0/P)
 
 and nothing else, because the map of amplitudes is triangular with unit diagonal in logarithms. (A test compares it with
 a determinant by finite differences.) The same lines serve NumPy arrays of draws and the PyTensor model.
@@ -161,7 +161,7 @@ def ln_prior(z: Any, history: Any, problem: Problem) -> Any:
     logp += normal(p.ln_birth_field, 4) + normal(p.ln_birth_period, 5)
     logp += active[6] * normal(p.ln_umklapp, 6)
     logp += -limits[3] - _LN_AGE_NORM - _softplus(xp, _AGE_EDGE * (p.ln_age - limits[3]))
-    logp += -history[1] - history[2] + np.log(2.0) + problem.spin[2] - history[3] - _softplus(xp, z[4])
+    logp += -history[1] - history[2] + problem.spin[2] - history[3] - _softplus(xp, z[4])
     logp += active[1] * (xp.log(problem.warp[1]) + xp.log(xp.cosh(problem.warp[2] * z[1])))
     for i in range(1, len(z)):
         logp += (1.0 - active[i]) * (-0.5 * z[i] ** 2 - 0.5 * _LN_2PI)
