@@ -12,7 +12,7 @@ from decayinfer.errors import RunFolderError
 from decayinfer.results.files import explain_os_errors, write_whole
 
 if TYPE_CHECKING:
-    from xarray import DataTree
+    from xarray import Dataset, DataTree
 
     from decayinfer.catalog.pulsar import Pulsar
     from decayinfer.cooling.scenario import Scenario
@@ -124,20 +124,14 @@ def load_reported(path: Path) -> "ChannelFit":
         If there is no such file or it cannot be read.
     """
     import h5py
-    from xarray import Dataset, DataTree
+    from xarray import DataTree
 
-    from decayinfer.inference.outcome import PARAMETERS
-
-    dims = ("chain", "draw")
     header = read_header(path)
-    with explain_os_errors(path, "read"), h5py.File(path, "r") as file:
-        groups = {
-            name: Dataset(
-                {p.name: (dims, file[name][p.name][()]) for p in PARAMETERS if p.name in file[name]}
-            )
-            for name in ("posterior", "prior")
-            if name in file
-        }
+    try:
+        with h5py.File(path, "r") as file:
+            groups = {name: _reported(file[name]) for name in ("posterior", "prior") if name in file}
+    except (OSError, ValueError) as error:
+        raise _unreadable(path, error) from error
     return _channel_fit(header, DataTree.from_dict(groups))
 
 
@@ -155,15 +149,26 @@ def read_header(path: Path) -> dict[str, Any]:
         with h5py.File(path, "r") as file:
             header: dict[str, Any] = json.loads(file.attrs[HEADER])
     except (OSError, KeyError, ValueError) as error:
-        raise RunFolderError(
-            f"cannot read {path}: {error}; delete it and run the same command again"
-        ) from error
+        raise _unreadable(path, error) from error
     if header.get("layout") != LAYOUT:
         raise RunFolderError(
             f"{path} has layout {header.get('layout')}, this decayinfer reads layout {LAYOUT}; "
             "use the version named in the run's run.toml"
         )
     return header
+
+
+def _reported(group: Any) -> "Dataset":
+    from xarray import Dataset
+
+    from decayinfer.inference.outcome import PARAMETERS
+
+    names = [p.name for p in PARAMETERS if p.name in group]
+    return Dataset({name: (("chain", "draw"), group[name][()]) for name in names})
+
+
+def _unreadable(path: Path, error: Exception) -> RunFolderError:
+    return RunFolderError(f"cannot read {path}: {error}; delete it and run the same command again")
 
 
 def _channel_fit(header: dict[str, Any], draws: "DataTree") -> "ChannelFit":

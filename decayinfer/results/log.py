@@ -8,7 +8,7 @@ from pathlib import Path
 
 from decayinfer.results.files import explain_os_errors
 
-__all__ = ["LOG", "Log", "collect_lines", "log_file", "stamp"]
+__all__ = ["LOG", "Log", "log_file", "logged_to", "stamp"]
 
 #: Parent of every logger of the package.
 LOG = logging.getLogger("decayinfer")
@@ -20,23 +20,22 @@ _FORMAT = logging.Formatter("%(asctime)s %(levelname)s %(message)s", "%Y-%m-%d %
 _FORMAT.converter = time.gmtime
 
 
-class _Collect(logging.Handler):
-    """Keep formatted records in a list."""
+class _Handler(logging.Handler):
+    """Pass formatted records on."""
 
-    def __init__(self, lines: list[str]) -> None:
+    def __init__(self, log: Log) -> None:
         super().__init__(logging.INFO)
-        self.lines = lines
+        self.log = log
         self.setFormatter(_FORMAT)
 
     def emit(self, record: logging.LogRecord) -> None:
-        self.lines.append(self.format(record))
+        self.log([self.format(record)])
 
 
 @contextmanager
-def collect_lines() -> Iterator[list[str]]:
-    """Collect what this package logs in the block, and the warnings of the libraries below it."""
-    lines: list[str] = []
-    handler = _Collect(lines)
+def logged_to(log: Log) -> Iterator[None]:
+    """Pass on what this package logs in the block, and the warnings of the libraries below it."""
+    handler = _Handler(log)
     loggers = (LOG, logging.getLogger("py.warnings"))
     level = LOG.level
     LOG.setLevel(logging.INFO)
@@ -44,7 +43,7 @@ def collect_lines() -> Iterator[list[str]]:
     for logger in loggers:
         logger.addHandler(handler)
     try:
-        yield lines
+        yield
     finally:
         logging.captureWarnings(False)
         for logger in loggers:

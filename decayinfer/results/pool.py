@@ -13,13 +13,15 @@ from collections.abc import Callable, Generator, Iterator, Sequence
 from concurrent.futures import FIRST_COMPLETED, Future, ProcessPoolExecutor, wait
 from concurrent.futures.process import BrokenProcessPool
 from contextlib import contextmanager
+from dataclasses import replace
+from itertools import batched
 from typing import TYPE_CHECKING
 
 from decayinfer.cooling.registry import load_scenario, register_scenario
 from decayinfer.errors import SamplingError
 from decayinfer.inference.outcome import ChannelFit, Status
 from decayinfer.results.threads import one_thread
-from decayinfer.results.work import DIED, Done, Task, work_on
+from decayinfer.results.work import DIED, Done, Fitter, Task, work_on
 
 if TYPE_CHECKING:
     from multiprocessing.context import SpawnContext
@@ -32,6 +34,9 @@ if TYPE_CHECKING:
 __all__ = ["in_processes"]
 
 _POLL_S = 0.3
+
+#: Processes are renewed after about this many objects, for samplers keep some memory after every run.
+_OBJECTS_PER_PROCESS = 100
 
 type Tick = Callable[[Sequence[Task]], None]
 
@@ -60,12 +65,13 @@ def in_processes(tasks: Sequence[Task], *, jobs: int, tick: Tick) -> Iterator[Do
     RunFolderError
         If a file cannot be written or read.
     """
-    waiting = deque(tasks)
-    while waiting:
-        suspects = yield from _until_broken(waiting, jobs, tick)
-        for task in suspects:
-            if (yield from _until_broken(deque([task]), 1, tick)):
-                yield work_on(task, _mark_failed)
+    for batch in batched(tasks, _OBJECTS_PER_PROCESS * jobs):
+        waiting = deque(batch)
+        while waiting:
+            suspects = yield from _until_broken(waiting, jobs, tick)
+            for task in suspects:
+                if (yield from _until_broken(deque([task]), 1, tick)):
+                    yield _work_on(task, _mark_failed)
 
 
 def _until_broken(waiting: deque[Task], jobs: int, tick: Tick) -> Generator[Done, None, list[Task]]:
@@ -137,7 +143,13 @@ def _ready() -> bool:
 def _work(task: Task) -> Done:
     from decayinfer.inference import fit
 
-    return work_on(task, fit.fit_channel, stop=lambda: _stop is not None and _stop.is_set())
+    return _work_on(task, fit.fit_channel, stop=lambda: _stop is not None and _stop.is_set())
+
+
+def _work_on(task: Task, fitter: Fitter, *, stop: Callable[[], bool] = lambda: False) -> Done:
+    """Work on an object and send the lines for the log back with the result."""
+    lines: list[str] = []
+    return replace(work_on(task, fitter, lines.extend, stop=stop), lines=tuple(lines))
 
 
 def _mark_failed(pulsar: "Pulsar", channel: str, scenario: str, _: "FitSettings") -> ChannelFit:

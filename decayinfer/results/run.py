@@ -196,6 +196,26 @@ def fit_sample(
         If a channel or scenario does not exist.
     RunFolderError
         If the folder cannot take the run, see `run_fit`.
+
+    Examples
+    --------
+    >>> from tempfile import TemporaryDirectory
+    >>> from astropy.table import Table
+    >>> import decayinfer as di
+    >>> rows = [("Rush 7", 0.2, 5e-14, 20.0, 1.0), ("Rush 9", 0.4, 3e-14, 8.0, 0.5)]
+    >>> header = ("name", "period", "period_derivative", "braking_index", "braking_index_err")
+    >>> scenario = di.scenario_names()[0]
+    >>> settings = di.FitSettings(channels=("constant", "phonon"), cooling=(scenario,))
+    >>> with TemporaryDirectory() as folder:
+    ...     run = di.fit_sample(Table(rows=rows, names=header), out=folder, settings=settings)
+    ...     objects, parameters = run.objects, run.parameters
+    ...     draws = run.draws("Rush 7", scenario, "phonon")
+    >>> objects.best_channel.tolist()
+    ['phonon', 'phonon']
+    >>> parameters.columns[:8].tolist()
+    ['object', 'scenario', 'channel', 'parameter', 'unit', 'prior_q05', 'prior_q50', 'prior_q95']
+    >>> draws["posterior"]["mass"].shape
+    (2, 1000)
     """
     from decayinfer.catalog import Catalog, read_table
     from decayinfer.results.read import read_run
@@ -250,14 +270,14 @@ def _work_through(
 
     def one_by_one() -> Iterator[Done]:
         for task in tasks:
-            yield work_on(task, fit.fit_channel, on_start=lambda _, task=task: tick([task]))  # type: ignore[misc]
+            yield work_on(task, fit.fit_channel, log, on_start=lambda _, task=task: tick([task]))  # type: ignore[misc]
 
     finished = {}
     with kept_interrupts() as check_interrupt:
         for done in in_processes(tasks, jobs=jobs, tick=tick) if jobs > 1 else one_by_one():
             finished[done.name] = done
             missing[done.name] = 0
-            log(done.log)
+            log(done.lines)
             tick(())
     return finished
 

@@ -12,10 +12,10 @@ from decayinfer.errors import RunFolderError
 from decayinfer.inference.outcome import ChannelFit, ObjectFit, Status
 from decayinfer.inference.settings import FitSettings
 from decayinfer.results.draws import draws_path, fingerprint, load_reported, read_header, save_channel_fit
-from decayinfer.results.log import LOG, collect_lines, stamp
+from decayinfer.results.log import LOG, Log, logged_to, stamp
 from decayinfer.results.summary import ObjectRows, summarise
 
-__all__ = ["DIED", "Done", "Stopped", "Task", "drop_unusable", "work_on"]
+__all__ = ["DIED", "Done", "Fitter", "Stopped", "Task", "drop_unusable", "work_on"]
 
 #: Reason of the posterior runs that were not finished when their process was lost.
 DIED = "the process at work was lost twice (killed, out of memory or crashed)"
@@ -69,14 +69,14 @@ class Done:
         Its rows in the tables.
     fitted : int
         How many posterior runs were made now rather than found.
-    log : tuple of str
-        Lines for log.txt.
+    lines : tuple of str
+        Lines for log.txt, when they have not been passed on at once.
     """
 
     name: str
     rows: ObjectRows
     fitted: int
-    log: tuple[str, ...]
+    lines: tuple[str, ...] = ()
 
 
 class Stopped(Exception):  # noqa: N818 - a request, not an error
@@ -105,6 +105,7 @@ def drop_unusable(task: Task) -> list[str]:
 def work_on(
     task: Task,
     fitter: Fitter,
+    log: Log,
     *,
     on_start: Callable[[Cell], None] = lambda _: None,
     stop: Callable[[], bool] = lambda: False,
@@ -118,6 +119,8 @@ def work_on(
     fitter : callable
         Makes one posterior run from pulsar, channel, scenario and settings. What it raises becomes status
         ``failed``.
+    log : callable
+        Takes lines for log.txt.
     on_start : callable
         Told scenario and channel before each posterior run.
     stop : callable
@@ -130,7 +133,7 @@ def work_on(
     RunFolderError
         If a file cannot be written or read.
     """
-    with collect_lines() as lines:
+    with logged_to(log):
         missing = task.missing
         for cell in missing:
             if stop():
@@ -139,7 +142,7 @@ def work_on(
             _fit_and_save(task, cell, fitter)
         fits = tuple(_load(task, cell, fitter) for cell in task.cells)
         rows = _rows(task, fits)
-    return Done(task.pulsar.name, rows, len(missing), tuple(lines))
+    return Done(task.pulsar.name, rows, len(missing))
 
 
 def _fit_and_save(task: Task, cell: Cell, fitter: Fitter) -> None:
@@ -171,13 +174,17 @@ def _detail(fit: ChannelFit) -> str:
 
 
 def _load(task: Task, cell: Cell, fitter: Fitter) -> ChannelFit:
-    """Read a posterior run back; if its file is damaged, make it once more."""
+    """Read a posterior run back; if its file is damaged, make it once more, and then it has failed."""
     try:
         return load_reported(task.path(cell))
     except RunFolderError as error:
         LOG.warning("%s: done again, for %s", _label(task, cell), error)
-        _fit_and_save(task, cell, fitter)
+    _fit_and_save(task, cell, fitter)
+    try:
         return load_reported(task.path(cell))
+    except RunFolderError as error:
+        LOG.error("%s: failed, for %s", _label(task, cell), error)
+        return ChannelFit(task.pulsar.name, *cell, Status.FAILED, reason=str(error))
 
 
 def _rows(task: Task, fits: tuple[ChannelFit, ...]) -> ObjectRows:

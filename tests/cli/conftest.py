@@ -9,6 +9,7 @@ from typer.testing import CliRunner
 
 import decayinfer.inference
 from decayinfer.cli import app
+from decayinfer.cooling import registry
 
 
 @pytest.fixture
@@ -20,6 +21,8 @@ def engine(monkeypatch):
     spec.loader.exec_module(module)
     fake = types.SimpleNamespace(fit_channel=module.fit_channel)
     monkeypatch.setattr(decayinfer.inference, "fit", fake, raising=False)
+    for scenario in module.scenarios():
+        monkeypatch.setitem(registry._REGISTERED, scenario.name, scenario)
     return module
 
 

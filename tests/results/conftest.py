@@ -13,6 +13,7 @@ import pytest
 import decayinfer
 import decayinfer.inference
 from decayinfer.catalog import read_table
+from decayinfer.cooling import registry
 from decayinfer.inference.settings import FitSettings
 
 HERE = Path(__file__).parent
@@ -30,6 +31,8 @@ def make_engine():
         fake = types.SimpleNamespace(fit_channel=module.fit_channel)
         with pytest.MonkeyPatch.context() as patch:
             patch.setattr(decayinfer.inference, "fit", fake, raising=False)
+            for scenario in module.scenarios():
+                patch.setitem(registry._REGISTERED, scenario.name, scenario)
             yield module
 
     return make
@@ -59,7 +62,9 @@ def catalogue():
 @pytest.fixture(scope="session")
 def settings():
     """Short settings with one channel that is unreachable."""
-    return FitSettings(channels=("constant", "phonon", "phonon+hall"), draws=100, tune=50)
+    return FitSettings(
+        channels=("constant", "phonon", "phonon+hall"), cooling=("cool", "warm"), draws=100, tune=50
+    )
 
 
 @pytest.fixture

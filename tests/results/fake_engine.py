@@ -14,6 +14,7 @@ import numpy as np
 from xarray import Dataset, DataTree
 
 from decayinfer.channels.registry import load_channel
+from decayinfer.cooling.registry import load_scenario, scenario_names
 from decayinfer.inference.outcome import ChannelFit, Status
 
 #: Seconds that each posterior run takes.
@@ -21,6 +22,12 @@ delay = 0.0
 
 #: Every call, as (object, scenario, channel).
 calls = []
+
+
+def scenarios():
+    """Return two cooling scenarios that the package does not ship."""
+    shipped = load_scenario(scenario_names()[0])
+    return [replace(shipped, name=name) for name in ("cool", "warm")]
 
 
 class PanicError(BaseException):

@@ -13,13 +13,19 @@ import fake_engine
 
 import decayinfer.inference
 from decayinfer.catalog import read_table
+from decayinfer.cooling.registry import register_scenario
 
 if __name__ in (
     "__main__",
     "__mp_main__",
 ):  # parallel processes import this file too
     fake_engine.delay = float(sys.argv[3])
+    for scenario in fake_engine.scenarios():
+        register_scenario(scenario)
     decayinfer.inference.fit = types.SimpleNamespace(fit_channel=fake_engine.fit_channel)
+
+
+CHANNELS = ("constant", "phonon", "phonon+hall")
 
 
 def catalogue(names):
@@ -35,5 +41,5 @@ if __name__ == "__main__":
     from decayinfer.inference.settings import FitSettings
     from decayinfer.results.run import run_fit
 
-    settings = FitSettings(channels=("constant", "phonon", "phonon+hall"), draws=100, tune=50)
+    settings = FitSettings(channels=CHANNELS, cooling=("cool", "warm"), draws=100, tune=50)
     run_fit(catalogue(sys.argv[4:]), sys.argv[1], settings, jobs=int(sys.argv[2]))

@@ -9,7 +9,6 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from decayinfer.catalog.pulsar import Pulsar
-from decayinfer.cooling.registry import load_scenario
 from decayinfer.errors import RunFolderError
 from decayinfer.inference.outcome import ChannelFit, Status
 from decayinfer.inference.settings import FitSettings
@@ -28,7 +27,7 @@ PULSAR = Pulsar(name="A", period=0.2, period_derivative=5e-14, braking_index=20.
 
 
 def test_round_trip_of_numbers_and_draws(tmp_path, engine, settings):
-    fit = engine.fit_channel(PULSAR, "phonon+hall", "candle", settings)
+    fit = engine.fit_channel(PULSAR, "phonon+hall", "cool", settings)
     path = tmp_path / "sub" / "x.nc"
     save_channel_fit(path, fit, fingerprint="abc")
     back = load_channel_fit(path)
@@ -42,7 +41,7 @@ def test_round_trip_of_numbers_and_draws(tmp_path, engine, settings):
 
 
 def test_the_quick_reading_is_the_full_one_in_part(tmp_path, engine, settings):
-    fit = engine.fit_channel(PULSAR, "phonon+hall", "candle", settings)
+    fit = engine.fit_channel(PULSAR, "phonon+hall", "cool", settings)
     fit.draws["posterior"] = fit.draws["posterior"].dataset.assign(
         coordinates=(("chain", "draw", "k"), np.ones((2, 100, 8)))
     )
@@ -57,7 +56,7 @@ def test_the_quick_reading_is_the_full_one_in_part(tmp_path, engine, settings):
 
 def test_round_trip_without_draws(tmp_path):
     fit = ChannelFit(
-        "A", "candle", "hall", Status.UNREACHABLE, reason="far: ±∞", ln_evidence=-math.inf, flags=("old",)
+        "A", "cool", "hall", Status.UNREACHABLE, reason="far: ±∞", ln_evidence=-math.inf, flags=("old",)
     )
     save_channel_fit(tmp_path / "x.nc", fit)
     back = load_channel_fit(tmp_path / "x.nc")
@@ -69,21 +68,21 @@ def test_round_trip_without_draws(tmp_path):
 
 def test_the_same_run_gives_the_same_bytes(tmp_path, engine, settings):
     for name in ("a.nc", "b.nc"):
-        save_channel_fit(tmp_path / name, engine.fit_channel(PULSAR, "hall", "candle", settings))
+        save_channel_fit(tmp_path / name, engine.fit_channel(PULSAR, "hall", "cool", settings))
     assert (tmp_path / "a.nc").read_bytes() == (tmp_path / "b.nc").read_bytes()
 
 
 @pytest.mark.parametrize("keep", [0, 100, -1])
 def test_damaged_files_are_refused_with_a_remedy(tmp_path, engine, settings, keep):
     path = tmp_path / "x.nc"
-    save_channel_fit(path, engine.fit_channel(PULSAR, "hall", "candle", settings))
+    save_channel_fit(path, engine.fit_channel(PULSAR, "hall", "cool", settings))
     path.write_bytes(path.read_bytes()[:keep])
     with pytest.raises(RunFolderError, match=r"cannot read .*x\.nc.*run the same command again"):
         load_channel_fit(path)
 
 
 def test_another_layout_is_refused(tmp_path, monkeypatch):
-    save_channel_fit(tmp_path / "x.nc", ChannelFit("A", "candle", "hall", Status.FAILED))
+    save_channel_fit(tmp_path / "x.nc", ChannelFit("A", "cool", "hall", Status.FAILED))
     monkeypatch.setattr(module, "LAYOUT", 2)
     with pytest.raises(RunFolderError, match="has layout 1, this decayinfer reads layout 2"):
         read_header(tmp_path / "x.nc")
@@ -111,19 +110,19 @@ def test_long_names_with_one_beginning_differ():
 
 
 def test_objects_cannot_leave_the_run_folder(tmp_path):
-    path = draws_path(tmp_path, "../../etc", "candle", "phonon+hall")
+    path = draws_path(tmp_path, "../../etc", "cool", "phonon+hall")
     assert path.parent.parent == tmp_path / "draws"
-    assert path.name == "candle__phonon+hall.nc"
+    assert path.name == "cool__phonon+hall.nc"
 
 
-def test_the_fingerprint_knows_what_decides_the_numbers():
-    settings, candle = FitSettings(), load_scenario("candle")
-    first = fingerprint(PULSAR, settings, candle)
-    assert first == fingerprint(replace(PULSAR), FitSettings(channels=("hall",)), candle)
+def test_the_fingerprint_knows_what_decides_the_numbers(engine):
+    settings, cool = FitSettings(), engine.scenarios()[0]
+    first = fingerprint(PULSAR, settings, cool)
+    assert first == fingerprint(replace(PULSAR), FitSettings(channels=("hall",)), cool)
     changed = [
-        fingerprint(replace(PULSAR, braking_index=21.0), settings, candle),
-        fingerprint(PULSAR, replace(settings, seed=2), candle),
-        fingerprint(PULSAR, replace(settings, priors=replace(settings.priors, mass_mean=1.4)), candle),
-        fingerprint(PULSAR, settings, replace(candle, scalars=candle.scalars + 1e-9)),
+        fingerprint(replace(PULSAR, braking_index=21.0), settings, cool),
+        fingerprint(PULSAR, replace(settings, seed=2), cool),
+        fingerprint(PULSAR, replace(settings, priors=replace(settings.priors, mass_mean=1.4)), cool),
+        fingerprint(PULSAR, settings, replace(cool, scalars=cool.scalars + 1e-9)),
     ]
     assert len({first, *changed}) == 5

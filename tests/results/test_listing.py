@@ -21,7 +21,8 @@ def test_a_row_per_object(tmp_path, engine, catalogue, settings):
     run = read_run(run_fit(catalogue("A", "unreachable"), tmp_path / "run", settings).path)
     first, second = (dict(zip(HEADER, row, strict=True)) for row in listing(run))
     assert (first["object"], first["n"], first["tau_c"]) == ("A", "20.0 ± 1.0", "63.4 kyr")
-    assert first["most probable channel"] == "phonon+hall 0.61"
+    # ln evidences in two scenarios: phonon -2.547, -2.039; phonon+hall -4.477, -5.175
+    assert first["most probable channel"] == "phonon 0.92"
     assert second["most probable channel"] == "none"
     assert second["flags"] == "no-channel"
     assert second["mass 90 % [Msun]"] == second["prior"] == second["phonon time 90 %"] == "-"

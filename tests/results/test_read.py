@@ -29,30 +29,30 @@ def test_tables_have_units(run):
 
 
 def test_draws_are_those_of_the_tables(run):
-    posterior = run.draws("A", "candle", "phonon")["posterior"]
+    posterior = run.draws("A", "cool", "phonon")["posterior"]
     frame = run.parameters.set_index(["object", "scenario", "channel", "parameter"])
-    row = frame.loc[("A", "candle", "phonon", "mass")]
+    row = frame.loc[("A", "cool", "phonon", "mass")]
     assert row["mean"] == pytest.approx(float(posterior["mass"].mean()), rel=1e-9)
 
 
 def test_unreachable_runs_keep_their_prior(run):
-    assert set(run.draws("unreachable", "candle", "phonon").children) == {"prior"}
+    assert set(run.draws("unreachable", "cool", "phonon").children) == {"prior"}
 
 
 def test_runs_without_draws_say_why(tmp_path, engine, catalogue, settings):
     run = read_run(run_fit(catalogue("broken"), tmp_path / "run", settings).path)
     with pytest.raises(
-        RunFolderError, match=r"no draws for phonon in candle: failed \(ValueError: the sampler"
+        RunFolderError, match=r"no draws for phonon in cool: failed \(ValueError: the sampler"
     ):
-        run.draws("broken", "candle", "phonon")
+        run.draws("broken", "cool", "phonon")
 
 
 @pytest.mark.parametrize(
     ("asked", "said"),
     [
-        (("Z", "candle", "phonon"), "no object 'Z'"),
-        (("A", "warm", "phonon"), "no cooling scenario 'warm'"),
-        (("A", "candle", "hall"), "no channel 'hall'"),
+        (("Z", "cool", "phonon"), "no object 'Z'"),
+        (("A", "tepid", "phonon"), "no cooling scenario 'tepid'"),
+        (("A", "cool", "hall"), "no channel 'hall'"),
     ],
 )
 def test_unknown_names(run, asked, said):

@@ -11,6 +11,7 @@ import numpy as np
 import pytest
 
 from decayinfer.errors import InputError, RunFolderError, SamplingError, UnknownNameError
+from decayinfer.results import pool as module_of_pool
 from decayinfer.results import run as module
 from decayinfer.results import tables
 from decayinfer.results.lock import run_lock
@@ -50,11 +51,11 @@ def test_a_run_folder_holds_what_it_should(tmp_path, engine, catalogue, settings
     summary = run_fit(catalogue("A", "B/2"), tmp_path / "run", settings)
     assert names_in(tmp_path / "run") == {*TABLES, "run.toml", "log.txt", "input.ecsv", "draws"}
     assert names_in(tmp_path / "run/draws") == {"A", "B%2F2"}
-    channels, scenarios = settings.channels, ("candle", "slow-candle")
+    channels, scenarios = settings.channels, ("cool", "warm")
     assert names_in(tmp_path / "run/draws/A") == {f"{s}__{c}.nc" for s in scenarios for c in channels}
     assert (summary.objects, summary.fitted, summary.reused) == (2, 12, 0)
     assert (summary.unreachable, summary.failed) == (4, 0)
-    assert "A candle phonon: ok, ln evidence" in (tmp_path / "run/log.txt").read_text()
+    assert "A cool phonon: ok, ln evidence" in (tmp_path / "run/log.txt").read_text()
 
 
 def test_the_same_call_reuses_every_file(tmp_path, engine, catalogue, settings, whole):
@@ -66,11 +67,11 @@ def test_the_same_call_reuses_every_file(tmp_path, engine, catalogue, settings, 
 
 def test_missing_and_damaged_files_are_made_again(tmp_path, engine, catalogue, settings, whole):
     folder = tmp_path / "whole" / "draws" / "A"
-    (folder / "candle__phonon.nc").unlink()
-    damaged = folder / "slow-candle__phonon.nc"
+    (folder / "cool__phonon.nc").unlink()
+    damaged = folder / "warm__phonon.nc"
     damaged.write_bytes(damaged.read_bytes()[:1000])
     run_fit(catalogue("A", "B"), tmp_path / "whole", settings)
-    assert engine.calls == [("A", "candle", "phonon"), ("A", "slow-candle", "phonon")]
+    assert engine.calls == [("A", "cool", "phonon"), ("A", "warm", "phonon")]
     assert table_bytes(tmp_path / "whole") == whole
     assert "done again, for its file is damaged" in (tmp_path / "whole/log.txt").read_text()
 
@@ -84,14 +85,14 @@ def test_damage_behind_an_intact_header_is_made_again(
     load, broken = work.load_reported, []
 
     def fail_once(path):
-        if path.name == "candle__phonon.nc" and path.parent.name == "A" and not broken:
+        if path.name == "cool__phonon.nc" and path.parent.name == "A" and not broken:
             broken.append(path)
             raise RunFolderError("bad sector")
         return load(path)
 
     monkeypatch.setattr(work, "load_reported", fail_once)
     run_fit(catalogue("A", "B"), tmp_path / "whole", settings)
-    assert engine.calls == [("A", "candle", "phonon")]
+    assert engine.calls == [("A", "cool", "phonon")]
     assert table_bytes(tmp_path / "whole") == whole
 
 
@@ -119,27 +120,49 @@ def test_runs_that_did_not_converge_keep_their_draws_and_are_not_tried_again(
     run_fit(catalogue("stuck"), tmp_path / "run", settings)
     run = read_run(tmp_path / "run")
     assert set(run.channels.status) == {"failed", "unreachable"}
-    assert run.draws("stuck", "candle", "phonon")["posterior"].sizes["draw"] == 100
+    assert run.draws("stuck", "cool", "phonon")["posterior"].sizes["draw"] == 100
     assert len(run.parameters) == 0
     engine.calls.clear()
     run_fit(catalogue("stuck"), tmp_path / "run", settings)
     assert engine.calls == []
 
 
-def test_an_object_without_summary_is_failed_not_fatal(tmp_path, engine, catalogue, settings, monkeypatch):
-    fit = engine.fit_channel
+@pytest.fixture
+def change_draws_of_a(engine, monkeypatch):
+    """Have the fake engine hand back other draws for object A."""
 
-    def odd(pulsar, channel, scenario, settings):
-        made = fit(pulsar, channel, scenario, settings)
-        if pulsar.name == "A" and made.draws is not None:
-            made.draws["posterior"] = made.draws["posterior"].dataset.drop_vars("mass").assign(mass="heavy")
-        return made
+    def have(change):
+        fit = engine.fit_channel
 
-    monkeypatch.setattr("decayinfer.inference.fit.fit_channel", odd)
+        def changed(pulsar, *arguments):
+            made = fit(pulsar, *arguments)
+            if pulsar.name == "A" and made.status == "ok":
+                made.draws["posterior"] = change(made.draws["posterior"].dataset)
+            return made
+
+        monkeypatch.setattr("decayinfer.inference.fit.fit_channel", changed)
+
+    return have
+
+
+def test_an_object_without_summary_is_failed_not_fatal(tmp_path, catalogue, settings, change_draws_of_a):
+    change_draws_of_a(lambda draws: draws.assign(mass=draws["mass"].astype(str)))
     run_fit(catalogue("A", "B"), tmp_path / "run", settings)
     frame = read_run(tmp_path / "run").channels
     assert set(frame[frame.object == "A"].status) == {"failed"}
     assert frame[frame.object == "A"].reason.str.startswith("no summary: ").all()
+    assert set(frame[frame.object == "B"].status) == {"unreachable", "ok"}
+
+
+def test_draws_that_cannot_be_read_back_are_failed_not_fatal(
+    tmp_path, catalogue, settings, change_draws_of_a
+):
+    change_draws_of_a(lambda draws: draws.assign(mass=1.4))
+    run_fit(catalogue("A", "B"), tmp_path / "run", settings)
+    frame = read_run(tmp_path / "run").channels
+    failed = frame[frame.status == "failed"]
+    assert set(failed.object) == {"A"}
+    assert failed.reason.str.startswith("cannot read ").all()
     assert set(frame[frame.object == "B"].status) == {"unreachable", "ok"}
 
 
@@ -149,7 +172,7 @@ def test_an_object_without_summary_is_failed_not_fatal(tmp_path, engine, catalog
         ({"draws": 101}, "draws was 100, is now 101"),
         ({"seed": 2}, "seed was 1, is now 2"),
         ({"channels": ("phonon",)}, "channels was constant,phonon,phonon+hall, is now phonon"),
-        ({"cooling": ("candle",)}, "cooling was candle,slow-candle, is now candle"),
+        ({"cooling": ("cool",)}, "cooling was cool,warm, is now cool"),
     ],
 )
 def test_other_settings_are_refused_by_name(tmp_path, engine, catalogue, settings, whole, change, said):
@@ -210,12 +233,13 @@ def test_bad_arguments(tmp_path, engine, catalogue, settings):
         run_fit(replace(catalogue("A"), pulsars=()), tmp_path / "run", settings)
     with pytest.raises(UnknownNameError, match="no channel 'hal'"):
         run_fit(catalogue("A"), tmp_path / "run", replace(settings, channels=("hal",)))
-    with pytest.raises(UnknownNameError, match="no cooling scenario 'warm'"):
-        run_fit(catalogue("A"), tmp_path / "run", replace(settings, cooling=("warm",)))
+    with pytest.raises(UnknownNameError, match="no cooling scenario 'tepid'"):
+        run_fit(catalogue("A"), tmp_path / "run", replace(settings, cooling=("tepid",)))
     assert not (tmp_path / "run").exists()
 
 
 def test_settings_name_every_channel_once(settings):
+    settings = replace(settings, cooling=())
     assert resolve_settings(replace(settings, channels=("hall", "hall"))).channels == ("hall",)
     assert "impurity+phonon+hall" in resolve_settings(replace(settings, channels=())).channels
 
@@ -265,7 +289,7 @@ def test_progress_counts_to_the_total(tmp_path, engine, catalogue, settings):
     run_fit(catalogue("A", "B"), tmp_path / "run", settings, progress=seen.append)
     assert [state.done for state in seen] == sorted(state.done for state in seen)
     assert (seen[0].done, seen[-1].done, seen[-1].total) == (0, 12, 12)
-    assert seen[1].running == ("A candle phonon",)
+    assert seen[1].running == ("A cool phonon",)
 
 
 # The tests below start processes of their own.
@@ -337,6 +361,24 @@ def test_an_object_that_kills_its_process_is_marked_and_the_rest_goes_on(tmp_pat
     assert set(frame[frame.object == "killer"].status) == {"failed"}
     assert frame[frame.object == "killer"].reason.str.contains("process at work was lost twice").all()
     assert set(frame[frame.object != "killer"].status) == {"unreachable", "ok"}
+
+
+def test_processes_are_renewed_and_the_order_of_rows_stays(
+    tmp_path, engine, catalogue, settings, monkeypatch
+):
+    """Objects that are finished need no engine, so the fake of this process is enough for the others too."""
+    names = ("A", "B", "C", "D", "E")
+    run_fit(catalogue(*names), tmp_path / "run", settings)
+    first = table_bytes(tmp_path / "run")
+    started = []
+    pool = module_of_pool.ProcessPoolExecutor
+    monkeypatch.setattr(module_of_pool, "_OBJECTS_PER_PROCESS", 1)
+    monkeypatch.setattr(
+        module_of_pool, "ProcessPoolExecutor", lambda *args, **kw: started.append(args) or pool(*args, **kw)
+    )
+    run_fit(catalogue(*names), tmp_path / "run", settings, jobs=2)
+    assert len(started) == 3
+    assert table_bytes(tmp_path / "run") == first
 
 
 def test_processes_that_cannot_start_are_explained(tmp_path, engine, catalogue, settings, monkeypatch):
