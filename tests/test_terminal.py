@@ -9,8 +9,8 @@ from decayinfer import terminal
 from decayinfer.results.run import Progress
 
 STATES = [
-    Progress(0, 4, ("A candle hall",)),
-    Progress(2, 4, ("B candle hall", "C candle [hall]")),
+    Progress(0, 4, ("A cool hall",)),
+    Progress(2, 4, ("B cool hall", "C cool [hall]")),
     Progress(4, 4),
 ]
 
