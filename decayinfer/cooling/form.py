@@ -113,7 +113,8 @@ def _branch(xp: Any, x: Any, mass: Any, rows: Any, named: dict[str, float]) -> A
         width = value(f"w{k}")
         y = y - value(f"s{k}") * width * _softplus(xp, (x - value(f"l{k}")) / width)
     for j in range(1, int(named["sigmoid_terms"]) + 1):
-        y = y - value(f"b{j}") / (1.0 + xp.exp(-(x - value(f"c{j}")) / value(f"v{j}")))
+        z = (x - value(f"c{j}")) / value(f"v{j}")
+        y = y - value(f"b{j}") * xp.exp(-_softplus(xp, -z))  # a sigmoid that cannot overflow
     if named["exponential_term"]:
         y = y - xp.exp(value("beta") * x - value("q"))
     return y

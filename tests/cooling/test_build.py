@@ -7,7 +7,7 @@ from decayinfer.cooling.recipes import RECIPES, SUPERFLUIDITY
 from decayinfer.cooling.scenario import read_scenario, write_scenario
 
 # Largest errors a fit may have, of T_b and of d ln T/d ln t, by superfluid model
-LIMITS = {"normal": (0.01, 0.05), "protons": (0.01, 0.05), "fading": (0.02, 0.05), "triplet": (0.05, 0.25)}
+LIMITS = {"normal": (0.01, 0.05), "protons": (0.01, 0.05), "fading": (0.01, 0.05), "triplet": (0.05, 0.25)}
 RECOMPUTED = ("sly4-normal-iron", "bsk24-protons-light", "apr4-triplet-iron", "bsk24-normal-iron-urca")
 
 
@@ -61,7 +61,9 @@ def test_fits_fall_with_age_on_a_dense_grid(name):
     scenario = load_scenario(name)
     dense = Grid(np.linspace(*form.MASS_RANGE, 101), np.geomspace(1.0, 1e7, 600))
     value, slope, *_ = evaluate(dense, scenario.table, scenario.scalars, Layout(()))
-    assert np.all(slope < 0)
+    # on its floor, to 1e-12, a star has stopped: there the slope may round to zero, never above
+    assert np.all(slope <= 0)
+    assert np.all(slope[value > scenario.scalars[form.SCALARS.index("ln_floor")] + 1e-12] < 0)
     assert np.all(np.isfinite(value))
 
 
