@@ -158,9 +158,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
     parser = argparse.ArgumentParser(prog="python -m decayinfer.cooling.build", description=__doc__)
     parser.add_argument("names", nargs="*", metavar="NAME", help="scenarios to make; all when none is given")
     parser.add_argument("--jobs", type=int, default=2, choices=(1, 2), help="processes")
-    parser.add_argument(
-        "--out", type=Path, default=FOLDER, help="folder of the data files"
-    )
+    parser.add_argument("--out", type=Path, default=FOLDER, help="folder of the data files")
     chosen = parser.parse_args(arguments)
     unknown = [name for name in chosen.names if name not in RECIPES]
     if unknown:
