@@ -172,8 +172,9 @@ def simulate(
         from decayinfer.inference.settings import FitSettings
         from decayinfer.inference.simulate import simulate_table
         from decayinfer.results.run import resolve_settings
-        from decayinfer.results.tables import save_table
+        from decayinfer.results.tables import check_new_table, save_table
 
+        check_new_table(out)  # before the work
         asked = FitSettings(channels=_names(channels), cooling=_names(cooling), seed=seed)
         save_table(simulate_table(objects, seed, resolve_settings(asked)), out)
     typer.echo(f"wrote {objects} invented objects to {out}")

@@ -4,6 +4,7 @@ Numbers are written with ten significant digits, nothing in a table tells the ti
 of the input, the scenarios and the channels. So the same draws give the same bytes.
 """
 
+import warnings
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from io import BytesIO, StringIO
@@ -24,6 +25,7 @@ __all__ = [
     "CHANNEL_COLUMNS",
     "PARAMETER_COLUMNS",
     "Column",
+    "check_new_table",
     "object_columns",
     "save_table",
     "to_ecsv",
@@ -157,15 +159,15 @@ def to_ecsv(table: "Table") -> str:
     return text.getvalue()
 
 
-def save_table(table: "Table", path: Path) -> None:
-    """Write a table in the format of the path's ending: .ecsv, .csv, .fits, .xml or .vot.
+def check_new_table(path: Path) -> str:
+    """Return the astropy format that the ending of a new table's path stands for.
 
     Raises
     ------
     InputError
-        If the ending stands for no format.
+        If the ending stands for none.
     RunFolderError
-        If the file exists already or cannot be written.
+        If the file exists already.
     """
     formats = {
         ".ecsv": "ascii.ecsv",
@@ -178,9 +180,26 @@ def save_table(table: "Table", path: Path) -> None:
         raise InputError(f"{path} must end in one of {', '.join(formats)} to tell its format")
     if path.exists():
         raise RunFolderError(f"{path} exists already; delete it or choose another name")
-    kind = formats[path.suffix.lower()]
+    return formats[path.suffix.lower()]
+
+
+def save_table(table: "Table", path: Path) -> None:
+    """Write a new table in the format of the path's ending: .ecsv, .csv, .fits, .xml or .vot.
+
+    Raises
+    ------
+    InputError
+        If the ending stands for no format.
+    RunFolderError
+        If the file exists already or cannot be written.
+    """
+    from astropy.units import UnitsWarning
+
+    kind = check_new_table(path)
     content: Any = StringIO() if kind.startswith("ascii") else BytesIO()
-    table.write(content, format=kind)
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore", UnitsWarning)  # VOTable would rather have tesla than gauss
+        table.write(content, format=kind)
     write_whole(path, content.getvalue())
 
 
