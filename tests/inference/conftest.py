@@ -23,6 +23,14 @@ def tools():
     return load(HERE / "tools.py", "inference_tools")
 
 
+@pytest.fixture(scope="module", autouse=True)
+def scenarios(tools):
+    """The tests' own scenarios, by name as long as a module of tests runs."""
+    forget = tools.register_scenarios()
+    yield
+    forget()
+
+
 @pytest.fixture(scope="session")
 def reference():
     """The symbolic field history, tests/inference/reference.py, as a module."""
@@ -32,3 +40,9 @@ def reference():
 @pytest.fixture
 def rng():
     return np.random.default_rng(20261)
+
+
+@pytest.fixture(scope="session")
+def study():
+    """The module of a study in tests/studies, by name."""
+    return lambda name: load(HERE.parent / "studies" / f"{name}.py", name)

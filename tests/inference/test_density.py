@@ -9,7 +9,6 @@ from pytensor.compile.mode import Mode
 from scipy import integrate, stats
 
 from decayinfer.channels.registry import load_channel
-from decayinfer.cooling.registry import load_scenario
 from decayinfer.inference.density import evaluate
 from decayinfer.inference.engine import engine
 from decayinfer.inference.forward import draw_prior
@@ -30,10 +29,6 @@ CHANNELS = [
     "impurity+phonon+hall",
 ]
 STEP = 1e-4
-
-
-def scenario_of(tools, name):
-    return tools.urca_scenario() if name == "urca" else load_scenario(name)
 
 
 # --- prior and Jacobian -----------------------------------------------------------------------------------
@@ -108,8 +103,8 @@ def test_density_is_the_prior_times_the_determinant_of_the_forward_map(tools, fo
     simulator, which knows nothing of the closed Jacobian. Prior densities are scipy's. Coordinates that the
     channel does not use are standard normal.
     """
-    scenario, priors = scenario_of(tools, name), Priors(freeze_out=law)
-    numbers = tools.problem(channel, scenario, priors=priors)
+    scenario, priors = tools.scenario(name), Priors(freeze_out=law)
+    numbers = tools.problem(channel, name, priors=priors)
     chosen = prior_of(channel, law, priors)
     for point in tools.typical_points(numbers, 2, rng):
         evaluation = evaluate(point[None], numbers)
@@ -156,7 +151,7 @@ class Compiled:
     """The log density and gradient that the sampler calls, through its C function."""
 
     def __init__(self, numbers):
-        self.compiled = engine().benchmark_data(numbers)
+        self.compiled = engine().with_numbers(numbers)
 
     def __call__(self, point):
         gradient, value = np.empty(8), ctypes.c_double()
@@ -173,7 +168,7 @@ class Compiled:
 @pytest.mark.parametrize("channel", CHANNELS)
 def test_the_sampler_s_density_and_gradient(tools, channel, scenario, rng):
     """The compiled density is the NumPy one to 1e-9; its gradient that of five-point differences to 1e-6."""
-    numbers = tools.problem(channel, scenario_of(tools, scenario))
+    numbers = tools.problem(channel, scenario)
     compiled = Compiled(numbers)
     for point in tools.typical_points(numbers, 3, rng):
         value, gradient = compiled(point)
@@ -190,12 +185,12 @@ def test_the_sampler_s_density_and_gradient(tools, channel, scenario, rng):
 
 @pytest.mark.parametrize("law", ["none", "exponential", "cut"])
 @pytest.mark.parametrize("channel", CHANNELS)
-def test_the_package_evolves_prior_draws_as_the_equations_do(forward, channel, law):
+def test_the_package_evolves_prior_draws_as_the_equations_do(tools, forward, channel, law):
     """Quadrature of the closed history against Runge-Kutta steps of the equations, on prior draws.
 
     1e-4 for every star whose index could be measured (the sharpest freeze-out errs most), 1e-6 in the median.
     """
-    scenario, priors = load_scenario("candle"), Priors(freeze_out=law)
+    scenario, priors = tools.scenario("candle"), Priors(freeze_out=law)
     prior = draw_prior(400, priors, np.random.default_rng(11))
     ours = package_evolve(prior, load_channel(channel), scenario, priors)
     draws = forward.Draws(

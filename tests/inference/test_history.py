@@ -3,7 +3,6 @@
 import numpy as np
 import pytest
 
-from decayinfer.cooling.registry import load_scenario
 from decayinfer.inference.coordinates import history_inputs
 from decayinfer.inference.density import evaluate
 from decayinfer.inference.kernel import history_many
@@ -30,17 +29,13 @@ STARS = [
 ]
 
 
-def scenario_of(tools, name):
-    return tools.urca_scenario() if name == "urca" else load_scenario(name)
-
-
 @pytest.mark.parametrize(("name", "law"), CASES)
 @pytest.mark.parametrize("channel", CHANNELS)
 def test_the_equations_lead_back_to_the_spin(tools, forward, channel, name, law, rng):
     """scipy's adaptive solver (DOP853, 1e-12) from birth reproduces P, Pdot, n and B to 1e-6."""
-    scenario = scenario_of(tools, name)
+    scenario = tools.scenario(name)
     for star in STARS:
-        numbers = tools.problem(channel, scenario, priors=Priors(freeze_out=law), **star)
+        numbers = tools.problem(channel, name, priors=Priors(freeze_out=law), **star)
         evaluation = evaluate(tools.typical_points(numbers, 1, rng), numbers)
         draws = tools.draws_of(forward, evaluation.physical)[0]
         today = forward.evolve_one(draws, scenario, channel=channel, law=FREEZE_OUT[law])
@@ -57,7 +52,7 @@ def test_shares_are_those_of_the_rates(tools, forward, channel, rng):
     """Each process's part of -dlnB/dt today, from the right-hand side of the field equation."""
     numbers = tools.problem(channel)
     physical = evaluate(tools.typical_points(numbers, 20, rng), numbers).physical
-    draws, star = tools.draws_of(forward, physical), load_scenario("candle")
+    draws, star = tools.draws_of(forward, physical), tools.scenario("candle")
     field = np.exp(physical.ln_field)
     law = FREEZE_OUT["exponential"]
     total = forward.equations(draws, star, channel, law).rate(draws.age, field)
@@ -76,7 +71,7 @@ def test_physical_parameters_come_back_as_coordinates(tools, forward, channel, r
     points = tools.typical_points(numbers, 20, rng)
     evaluation = evaluate(points, numbers)
     seen = tools.observe(
-        forward, tools.draws_of(forward, evaluation.physical), load_scenario("candle"),
+        forward, tools.draws_of(forward, evaluation.physical), tools.scenario("candle"),
         channel=channel, law=FREEZE_OUT["exponential"],
     )  # fmt: skip
     np.testing.assert_allclose(seen["ln_period"], numbers.spin[0], atol=1e-6)
@@ -104,7 +99,7 @@ def test_the_spin_equation_at_its_edges(tools):
 
 def test_the_field_is_that_of_the_orthogonal_rotator(tools, rng):
     """B = 3.2e19 G (P Pdot)^(1/2) for 10 km and 1e45 g cm^2 (Manchester & Taylor 1977), scaled by I^(1/2)/R^3."""
-    numbers, star = tools.problem("phonon"), load_scenario("candle")
+    numbers, star = tools.problem("phonon"), tools.scenario("candle")
     physical = evaluate(tools.typical_points(numbers, 5, rng), numbers).physical
     scale = np.sqrt(star.inertia_45(physical.mass)) / (star.radius_km(physical.mass) / 10.0) ** 3
     expected = 3.2e19 * np.sqrt(0.3 * 4e-14) * scale

@@ -3,7 +3,6 @@
 import numpy as np
 import pytest
 
-from decayinfer.cooling.registry import load_scenario
 from decayinfer.inference import kernel
 from decayinfer.inference.coordinates import history_inputs
 from decayinfer.inference.priors import Priors
@@ -21,13 +20,8 @@ CASES = [("candle", "none"), ("candle", "exponential"), ("candle", "cut"), ("urc
 
 
 @pytest.fixture(scope="module")
-def scenarios(tools):
-    return {"candle": load_scenario("candle"), "urca": tools.urca_scenario()}
-
-
-@pytest.fixture(scope="module")
-def plain(reference, scenarios):
-    return {name: reference.ReferenceHistory(scenario) for name, scenario in scenarios.items()}
+def plain(reference, tools):
+    return {name: reference.ReferenceHistory(tools.scenario(name)) for name in ("candle", "urca")}
 
 
 def inputs(tools, channel, scenario, law, count, rng):
@@ -39,9 +33,9 @@ def inputs(tools, channel, scenario, law, count, rng):
 
 @pytest.mark.parametrize(("name", "law"), CASES)
 @pytest.mark.parametrize("channel", CHANNELS)
-def test_kernel_is_the_plain_history(tools, scenarios, plain, channel, name, law, rng):
+def test_kernel_is_the_plain_history(tools, plain, channel, name, law, rng):
     """Values to 1e-10, derivatives to 1e-8."""
-    numbers, theta = inputs(tools, channel, scenarios[name], law, 4, rng)
+    numbers, theta = inputs(tools, channel, name, law, 4, rng)
     for row in theta:
         data = numbers.flags, numbers.freeze
         values, jacobian = kernel.history(row, *data, numbers.table, numbers.scalars)
@@ -51,10 +45,9 @@ def test_kernel_is_the_plain_history(tools, scenarios, plain, channel, name, law
 
 
 @pytest.mark.parametrize("name", ["candle", "urca"])
-def test_a_constant_field(tools, scenarios, name):
+def test_a_constant_field(tools, name):
     """b = 1: the age is tau itself, nothing decays, and only ln f remembers the temperature."""
-    scenario = scenarios[name]
-    numbers = tools.problem("constant", scenario)
+    scenario, numbers = tools.scenario(name), tools.problem("constant", name)
     theta = np.array([11.3, -9.0, 0.3, 0.2, 0.1, 1.52, -0.8])
 
     def ln_f(ln_age, mass, ln_umklapp):
@@ -73,8 +66,8 @@ def test_a_constant_field(tools, scenarios, name):
 
 
 @pytest.mark.parametrize("channel", ["constant", *CHANNELS])
-def test_many_histories_are_those_of_one_by_one(tools, scenarios, channel, rng):
-    numbers, theta = inputs(tools, channel, scenarios["urca"], "exponential", 8, rng)
+def test_many_histories_are_those_of_one_by_one(tools, channel, rng):
+    numbers, theta = inputs(tools, channel, "urca", "exponential", 8, rng)
     data = numbers.flags, numbers.freeze, numbers.table, numbers.scalars
     many = kernel.history_many(theta, *data)
     for row, values in zip(theta, many, strict=True):
@@ -82,9 +75,9 @@ def test_many_histories_are_those_of_one_by_one(tools, scenarios, channel, rng):
 
 
 @pytest.mark.parametrize("channel", CHANNELS)
-def test_the_age_is_where_the_spin_says(tools, scenarios, channel, rng):
+def test_the_age_is_where_the_spin_says(tools, channel, rng):
     """0 < t <= tau, since b >= 1 before now; a stronger decay makes a younger star."""
-    numbers, theta = inputs(tools, channel, scenarios["candle"], "exponential", 6, rng)
+    numbers, theta = inputs(tools, channel, "candle", "exponential", 6, rng)
     data = numbers.flags, numbers.freeze, numbers.table, numbers.scalars
     faster = theta + np.array([0.0, 0.1, 0.0, 0.0, 0.0, 0.0, 0.0])
     ages, younger = kernel.history_many(theta, *data)[:, 0], kernel.history_many(faster, *data)[:, 0]
@@ -93,9 +86,9 @@ def test_the_age_is_where_the_spin_says(tools, scenarios, channel, rng):
 
 
 @pytest.mark.parametrize("channel", CHANNELS)
-def test_extreme_inputs_end_in_numbers_or_nan(tools, scenarios, channel):
+def test_extreme_inputs_end_in_numbers_or_nan(tools, channel):
     """No exception, and never an infinite value, however far a sampler strays."""
-    numbers = tools.problem(channel, scenarios["urca"])
+    numbers = tools.problem(channel, "urca")
     data = numbers.flags, numbers.freeze, numbers.table, numbers.scalars
     generator = np.random.default_rng(5)
     spread = np.array([10.0, 20.0, 30.0, 30.0, 10.0, 0.0, 5.0])

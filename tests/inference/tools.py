@@ -1,13 +1,15 @@
 """What several tests of the inference share: objects, problems, typical points, and physical parameters."""
 
 from dataclasses import fields, replace
+from functools import cache
+from pathlib import Path
 
 import numpy as np
 
 from decayinfer.catalog.pulsar import Pulsar
 from decayinfer.channels.registry import channel_names, load_channel
-from decayinfer.cooling import form
-from decayinfer.cooling.registry import load_scenario
+from decayinfer.cooling import form, registry
+from decayinfer.cooling.scenario import read_scenario
 from decayinfer.inference.density import evaluate
 from decayinfer.inference.priors import Priors
 from decayinfer.inference.problem import make_problem
@@ -26,11 +28,30 @@ WREN = Pulsar(
 )  # fmt: skip
 
 
-def problem(channel, scenario="candle", star=WREN, priors=None, **changes):
-    """The numbers of one posterior problem; `scenario` is a name or a Scenario."""
-    if isinstance(scenario, str):
-        scenario = load_scenario(scenario)
-    return make_problem(replace(star, **changes), load_channel(channel), scenario, priors or Priors())
+@cache
+def scenario(name):
+    """A scenario of the tests' own: candle and slow-candle from tests/data, urca from below."""
+    if name == "urca":
+        return urca_scenario()
+    return read_scenario(Path(__file__).parents[1] / "data" / f"{name}.toml")
+
+
+def register_scenarios():
+    """Make the tests' scenarios known by name, for fits, until the function that is returned has been called."""
+    known = dict(registry._REGISTERED)
+    for name in (*SCENARIOS, "urca"):
+        registry.register_scenario(scenario(name))
+
+    def forget():
+        registry._REGISTERED.clear()
+        registry._REGISTERED.update(known)
+
+    return forget
+
+
+def problem(channel, cooling="candle", star=WREN, priors=None, **changes):
+    """The numbers of one posterior problem."""
+    return make_problem(replace(star, **changes), load_channel(channel), scenario(cooling), priors or Priors())
 
 
 def urca_scenario():
@@ -48,7 +69,7 @@ def urca_scenario():
         table[1, row, : len(values)] = values
     table[1, 0, 0] -= 0.5  # the fast branch is colder still
     scalars = np.array([2.0, 2.0, 1.0, 1.0, 2.0, 0.25, 1.5, 0.05, np.log(0.02), 100.0])
-    return replace(load_scenario("candle"), name="urca", table=table, scalars=scalars)
+    return replace(scenario("candle"), name="urca", table=table, scalars=scalars)
 
 
 def typical_points(numbers, count, rng):
