@@ -19,7 +19,7 @@ from decayinfer.results.lock import run_lock
 from decayinfer.results.log import Log, log_file, stamp
 from decayinfer.results.pool import in_processes
 from decayinfer.results.record import INPUT_NAME, claim_folder, make_record
-from decayinfer.results.tables import to_ecsv, write_tables
+from decayinfer.results.tables import any_to_ecsv, write_tables
 from decayinfer.results.work import Done, Task, drop_unusable, work_on
 
 if TYPE_CHECKING:
@@ -110,8 +110,8 @@ def run_fit(
     """Fit every object of a catalogue into a run folder.
 
     Posterior runs whose file is there are not made again, so the same call goes on after an interruption;
-    failed ones are tried again. Tables are computed from the files, so they come out the same, byte for byte,
-    however often the run was interrupted and whatever the number of jobs.
+    those that ended with an exception are tried again. Tables are computed from the files, so they come out
+    the same, byte for byte, however often the run was interrupted and whatever the number of jobs.
 
     Parameters
     ----------
@@ -235,7 +235,7 @@ def _check(catalog: "Catalog", jobs: int) -> None:
 
 def _claim(folder: Path, catalog: "Catalog", settings: FitSettings) -> tuple[str, ...]:
     """Make the folder this run's, keep the input in it, and clear what a killed run left half written."""
-    input_table = to_ecsv(catalog.table)
+    input_table = any_to_ecsv(catalog.table)
     remarks = claim_folder(folder, make_record(catalog, settings, input_table))
     if not (folder / INPUT_NAME).exists():
         write_whole(folder / INPUT_NAME, input_table)

@@ -4,6 +4,7 @@ Numbers are written with ten significant digits, nothing in a table tells the ti
 of the input, the scenarios and the channels. So the same draws give the same bytes.
 """
 
+import re
 import warnings
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
@@ -25,6 +26,7 @@ __all__ = [
     "CHANNEL_COLUMNS",
     "PARAMETER_COLUMNS",
     "Column",
+    "any_to_ecsv",
     "check_new_table",
     "object_columns",
     "save_table",
@@ -157,6 +159,24 @@ def to_ecsv(table: "Table") -> str:
     text = StringIO()
     table.write(text, format="ascii.ecsv")
     return text.getvalue()
+
+
+def any_to_ecsv(table: "Table") -> str:
+    """Return any table as ECSV text; metadata and Python objects that ECSV cannot hold become text."""
+    try:
+        return to_ecsv(table)
+    except Exception:  # astropy passes on whatever its JSON and YAML writers raise
+        plain = table.copy()
+        plain.meta = {str(key): _as_text(value) for key, value in table.meta.items()}
+        for name in table.colnames:
+            if getattr(getattr(table[name], "dtype", None), "kind", "") == "O":
+                plain.replace_column(name, [_as_text(value) for value in table[name]])
+        return to_ecsv(plain)
+
+
+def _as_text(value: Any) -> str:
+    """Return an object as text that is the same in every process."""
+    return re.sub(r" at 0x[0-9a-f]+", "", str(value))
 
 
 def check_new_table(path: Path) -> str:

@@ -12,6 +12,7 @@ from decayinfer.results.tables import (
     CHANNEL_COLUMNS,
     PARAMETER_COLUMNS,
     Column,
+    any_to_ecsv,
     object_columns,
     save_table,
     to_ecsv,
@@ -53,6 +54,18 @@ def test_last_bits_do_not_change_the_bytes():
     other = [{"name": "A", "x": 0.3, "k": 1}]
     assert one != other
     assert to_ecsv(to_table(one, COLUMNS)) == to_ecsv(to_table(other, COLUMNS))
+
+
+def test_any_table_can_be_kept():
+    table = Table({"name": ["A", "B"], "x": [1.5, 2.5]})
+    assert any_to_ecsv(table) == to_ecsv(table)
+    table["odd"] = [object(), {1}]
+    table.meta["note"] = object()
+    assert any_to_ecsv(table) == any_to_ecsv(table.copy())
+    back = Table.read(any_to_ecsv(table), format="ascii.ecsv")
+    assert list(back["odd"]) == ["<object object>", "{1}"]
+    assert back.meta["note"] == "<object object>"
+    assert list(back["x"]) == [1.5, 2.5]
 
 
 def test_an_empty_table_keeps_its_columns():
