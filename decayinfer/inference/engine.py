@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from decayinfer.errors import SamplingError
+from decayinfer.inference.compiled import density_callback, derivations, flat_numbers, identity_callback
 from decayinfer.inference.problem import COORDINATES, Problem
 
 __all__ = ["Engine", "NutsRun", "engine"]
@@ -45,29 +46,49 @@ class Engine:
     Attributes
     ----------
     compilations : int
-        Models compiled in this process.
+        Models compiled or loaded in this process.
     seconds : dict of str to float
-        Time spent on import, graph and compilation.
+        Time spent on import, graph (none when the machine code came from the disk cache) and compilation.
     """
 
     compilations = 0
 
-    def __init__(self, problem: Problem) -> None:
+    def __init__(self) -> None:
         start = time.perf_counter()
-        import nutpie
-
-        from decayinfer.inference.model import build_model
+        from nutpie.compile_pymc import CompiledPyMCModel
 
         imported = time.perf_counter()
-        model = build_model(problem)
-        built = time.perf_counter()
-        self._compiled = nutpie.compile_pymc_model(model)
+        density, identity = density_callback(), identity_callback()
+        loaded = time.perf_counter()
         Engine.compilations += 1
+        size = len(COORDINATES)
+        # the model that the sampler's own compiler would make, around callbacks that the disk keeps
+        self._compiled = CompiledPyMCModel(
+            compiled_logp_func=density,
+            compiled_expand_func=identity,
+            initial_point_func=np.zeros,
+            user_data=np.empty(0),
+            shared_data={},
+            shared_var_keys={},
+            n_expanded=size,
+            shape_info=(["coordinates"], [slice(0, size)], [(size,)]),
+            logp_func=None,
+            expand_func=None,
+            dims={},
+            reparameterized_names=[],
+            _n_dim=size,
+            _shapes={"coordinates": (size,)},
+            _coords={},
+        )
         self.seconds = {
             "import": imported - start,
-            "graph": built - imported,
-            "compilation": time.perf_counter() - built,
+            "graph": sum(derivations()),
+            "compilation": loaded - imported - sum(derivations()),
         }
+
+    def with_numbers(self, problem: Problem) -> Any:
+        """Return the sampler's model with a problem's numbers."""
+        return replace(self._compiled, user_data=flat_numbers(problem))
 
     def sample(
         self,
@@ -98,7 +119,7 @@ class Engine:
         """
         import nutpie
 
-        compiled = replace(self._compiled.with_data(**problem._asdict()), initial_point_func=start)
+        compiled = replace(self.with_numbers(problem), initial_point_func=start)
         begun = time.perf_counter()
         try:
             # the low-rank mass matrix follows the correlations that the amplitudes of the channels have
@@ -119,29 +140,8 @@ class Engine:
             seconds=time.perf_counter() - begun,
         )
 
-    def benchmark_data(self, problem: Problem) -> Any:
-        """Return the compiled model with a problem's numbers, for timing one gradient."""
-        return self._compiled.with_data(**problem._asdict())
-
 
 @cache
 def engine() -> Engine:
-    """Return this process's engine, compiling it at the first call."""
-    return Engine(_template())
-
-
-def _template() -> Problem:
-    """Numbers of the right shapes to compile with; every one is replaced before sampling."""
-    from decayinfer.catalog.pulsar import Pulsar
-    from decayinfer.channels.registry import channel_names, load_channel
-    from decayinfer.cooling.registry import load_scenario, scenario_names
-    from decayinfer.inference.priors import Priors
-    from decayinfer.inference.problem import make_problem
-
-    pulsar = Pulsar(
-        name="template", period=1.0, period_derivative=1e-14, braking_index=10.0,
-        braking_index_err_minus=1.0, braking_index_err_plus=1.0,
-    )  # fmt: skip
-    problem = make_problem(pulsar, load_channel(channel_names()[-1]), load_scenario(scenario_names()[0]), Priors())
-    assert problem.active.size == len(COORDINATES)
-    return problem
+    """Return this process's engine, compiling or loading it at the first call."""
+    return Engine()
