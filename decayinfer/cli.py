@@ -31,11 +31,17 @@ app = typer.Typer(
 #: Problems of an input table that `fit` prints; log.txt has all.
 _SHOWN = 10
 
+#: Scenarios that the sample of `demo` was drawn from.
+_DEMO_COOLING = ("bsk24-normal-iron", "bsk24-protons-iron")
+
 _USER_ERROR, _BAD_ROWS, _INTERRUPTED = 2, 1, 130
 
 Columns = Annotated[
     list[str] | None,
     typer.Option("--column", metavar="OURS=THEIRS", help="Name of a column in the table; repeat for more."),
+]
+Cooling = Annotated[
+    str, typer.Option(metavar="LIST", help="Cooling scenarios, or all; default the standard set.")
 ]
 Jobs = Annotated[int, typer.Option(min=1, help="Objects to fit at a time.")]
 
@@ -111,7 +117,7 @@ def fit(
     column: Columns = None,
     objects: Annotated[str, typer.Option(metavar="A,B", help="Fit these objects only.")] = "",
     channels: Annotated[str, typer.Option(metavar="LIST", help="Channels to fit; default all.")] = "",
-    cooling: Annotated[str, typer.Option(metavar="LIST", help="Cooling scenarios; default all.")] = "",
+    cooling: Cooling = "",
     draws: Annotated[int, typer.Option(help="Kept draws per chain.")] = 1000,
     tune: Annotated[int, typer.Option(help="Warm-up draws per chain.")] = 400,
     chains: Annotated[int, typer.Option(help="Chains per posterior run.")] = 2,
@@ -153,7 +159,7 @@ def demo(
 
         with as_file(files("decayinfer") / "data" / "demo.ecsv") as path:
             catalog = read_table(path)
-        _fit_and_show(catalog, out, FitSettings(), jobs)
+        _fit_and_show(catalog, out, FitSettings(cooling=_DEMO_COOLING), jobs)
 
 
 @app.command()
@@ -165,7 +171,7 @@ def simulate(
     ],
     seed: Annotated[int, typer.Option(help="Seed of the sample.")] = 1,
     channels: Annotated[str, typer.Option(metavar="LIST", help="Channels to draw from; default all.")] = "",
-    cooling: Annotated[str, typer.Option(metavar="LIST", help="Cooling scenarios; default all.")] = "",
+    cooling: Cooling = "",
 ) -> None:
     """Draw an invented sample from the priors; its truths stand in extra columns."""
     with one_thread():

@@ -19,7 +19,7 @@ def main() -> None:
         braking_index_err_minus=1.5,
         braking_index_err_plus=1.5,
     )
-    settings = di.FitSettings(channels=("phonon", "phonon+hall"), cooling=di.scenario_names()[:1])
+    settings = di.FitSettings(channels=("phonon", "phonon+hall"), cooling=("bsk24-protons-iron",))
     for run in di.fit_object(star, settings).fits:
         print(f"{run.channel}: ln p(n | P, Pdot) = {run.ln_evidence:.2f} +- {run.ln_evidence_err:.2f}")
         for name, unit in (("mass", "Msun"), ("phonon_time", "yr"), ("age", "yr")):

@@ -24,7 +24,7 @@ from decayinfer.cooling.evolution import Microphysics, cool, interior
 from decayinfer.cooling.fitting import Fit, Target, fit_direct_urca, fit_error, fit_form
 from decayinfer.cooling.gradients import Grid
 from decayinfer.cooling.matter import SYMMETRY_ENERGIES, direct_urca_mass
-from decayinfer.cooling.recipes import RECIPES, Recipe
+from decayinfer.cooling.recipes import RECIPES, STANDARD, Recipe
 from decayinfer.cooling.scenario import Scenario, write_scenario
 from decayinfer.cooling.stars import stars_of_mass
 from decayinfer.cooling.structure_fit import fit_structure
@@ -34,7 +34,7 @@ __all__ = ["build_scenario", "left_out_error", "main", "solve_histories"]
 
 type Array = NDArray[np.float64]
 
-FOLDER = Path(__file__).parent / "data" / "computed"  #: where the data files of the package are
+FOLDER = Path(__file__).parent / "data"  #: where the data files of the package are
 _LOG = logging.getLogger(__name__)
 _AGES = np.geomspace(300.0, 1e7, 121)
 _MASSES = np.linspace(*form.MASS_RANGE, 31)
@@ -70,6 +70,7 @@ def build_scenario(recipe: Recipe, *, starts: int = 20) -> Scenario:
         description=recipe.description,
         sources=recipe.sources,
         provisional=False,
+        standard=recipe.name in STANDARD,
         properties={
             "eos": recipe.eos,
             "superfluidity": recipe.superfluidity,

@@ -7,7 +7,7 @@ from types import MappingProxyType
 from decayinfer.cooling.eos import get_eos
 from decayinfer.cooling.evolution import Microphysics
 
-__all__ = ["RECIPES", "SUPERFLUIDITY", "Recipe"]
+__all__ = ["RECIPES", "STANDARD", "SUPERFLUIDITY", "Recipe"]
 
 #: Superfluid models: label, words for the reader, proton and neutron profile of the critical temperature.
 SUPERFLUIDITY: Mapping[str, tuple[str, str | None, str | None]] = MappingProxyType(
@@ -110,3 +110,9 @@ def _all() -> tuple[Recipe, ...]:
 
 #: Every computed scenario, by name.
 RECIPES: Mapping[str, Recipe] = MappingProxyType({recipe.name: recipe for recipe in _all()})
+
+#: What is fitted when nothing is asked for: the span of cooling, without pairing, with lasting or fading proton
+#: pairing, and with another equation of state and envelope. Triplet pairing is left out because it sets in within a
+#: tenth of ln t, faster than the quadrature of field histories follows (half a per cent in age and birth field); direct
+#: Urca because only the heaviest stars have it.
+STANDARD = ("bsk24-normal-iron", "bsk24-protons-iron", "bsk24-fading-iron", "sly4-protons-light")

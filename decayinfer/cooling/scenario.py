@@ -29,6 +29,8 @@ class Scenario:
         The papers the scenario rests on.
     provisional : bool
         True for a scenario built on scalings instead of a computed cooling curve.
+    standard : bool
+        True for a scenario that is fitted when none is named.
     weight : float
         Prior weight among scenarios, relative to the others.
     properties : mapping of str to str
@@ -48,6 +50,7 @@ class Scenario:
     description: str
     sources: tuple[str, ...]
     provisional: bool
+    standard: bool = False
     weight: float = 1.0
     properties: Mapping[str, str] = field(default_factory=dict)
     fit_error: Mapping[str, float] = field(default_factory=dict)
@@ -106,6 +109,7 @@ def read_scenario(path: Path) -> Scenario:
             description=raw["description"],
             sources=tuple(raw["sources"]),
             provisional=raw["provisional"],
+            standard=raw.get("standard", False),
             weight=float(raw.get("weight", 1.0)),
             properties=raw.get("properties", {}),
             fit_error=raw.get("fit_error", {}),
@@ -127,6 +131,7 @@ def write_scenario(scenario: Scenario, path: Path) -> None:
         f"description = {_text(scenario.description)}",
         f"sources = [{', '.join(_text(source) for source in scenario.sources)}]",
         f"provisional = {str(scenario.provisional).lower()}",
+        f"standard = {str(scenario.standard).lower()}",
         f"weight = {scenario.weight!r}",
     ]
     lines += ["", "[properties]", *(f"{k} = {_text(v)}" for k, v in scenario.properties.items())]

@@ -9,7 +9,7 @@ import numpy as np
 from decayinfer.catalog.pulsar import Pulsar
 from decayinfer.channels.base import Channel
 from decayinfer.channels.registry import channel_names, load_channel
-from decayinfer.cooling.registry import load_scenario, scenario_names
+from decayinfer.cooling.registry import choose_scenarios, load_scenario
 from decayinfer.errors import SamplingError
 from decayinfer.inference.coordinates import ln_index_excess
 from decayinfer.inference.density import evaluate
@@ -52,15 +52,15 @@ def fit_object(
     Examples
     --------
     >>> import decayinfer as di
-    >>> star = di.Pulsar(name="Wren 3", period=0.31, period_derivative=4e-14, braking_index=21.0,
+    >>> star = di.Pulsar(name="Wren 3", period=0.31, period_derivative=4e-14, braking_index=31.0,
     ...                  braking_index_err_minus=1.5, braking_index_err_plus=1.5)
-    >>> settings = di.FitSettings(channels=("constant", "phonon"), cooling=(di.scenario_names()[0],))
+    >>> settings = di.FitSettings(channels=("constant", "phonon"), cooling=("bsk24-protons-iron",))
     >>> fit = di.fit_object(star, settings)
     >>> [(run.channel, run.status.value) for run in fit.fits]
     [('constant', 'unreachable'), ('phonon', 'ok')]
     """
     settings = settings or FitSettings()
-    scenarios = settings.cooling or scenario_names()
+    scenarios = choose_scenarios(settings.cooling)
     weights = {name: load_scenario(name).weight for name in scenarios}
     total = sum(weights.values())
     fits = []

@@ -18,7 +18,7 @@ class FitSettings:
     channels : tuple of str
         Channel names; empty means every registered channel.
     cooling : tuple of str
-        Cooling scenario names; empty means every registered scenario.
+        Cooling scenario names; empty means the standard set, ``("all",)`` every scenario that is not provisional.
     draws, tune, chains : int
         Kept draws and warm-up draws of each chain, and the number of chains.
     seed : int

@@ -5,7 +5,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from decayinfer.channels.registry import channel_names, load_channel
-from decayinfer.cooling.registry import load_scenario, scenario_names
+from decayinfer.cooling.registry import choose_scenarios, load_scenario
 from decayinfer.errors import InputError
 from decayinfer.inference.forward import draw_prior, evolve
 from decayinfer.inference.measurement import sample_index
@@ -87,7 +87,7 @@ def simulate_table(n: int, seed: int = 1, settings: FitSettings | None = None) -
     rng = np.random.default_rng(seed)
     channels = settings.channels or channel_names()
     channels = tuple(name for name in channels if load_channel(name).decays) or channels
-    scenarios = settings.cooling or scenario_names()
+    scenarios = choose_scenarios(settings.cooling)
     rows = [_one(str(rng.choice(channels)), str(rng.choice(scenarios)), settings, rng) for _ in range(n)]
     return _table(rows, seed)
 

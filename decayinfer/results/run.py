@@ -9,7 +9,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from decayinfer.channels.registry import channel_names, load_channel
-from decayinfer.cooling.registry import load_scenario, scenario_names
+from decayinfer.cooling.registry import choose_scenarios
 from decayinfer.errors import InputError
 from decayinfer.inference.outcome import Status
 from decayinfer.inference.settings import FitSettings
@@ -91,12 +91,9 @@ def resolve_settings(settings: FitSettings) -> FitSettings:
         If a channel or scenario does not exist.
     """
     channels = tuple(dict.fromkeys(settings.channels or channel_names()))
-    cooling = tuple(dict.fromkeys(settings.cooling or scenario_names()))
     for name in channels:
         load_channel(name)
-    for name in cooling:
-        load_scenario(name)
-    return replace(settings, channels=channels, cooling=cooling)
+    return replace(settings, channels=channels, cooling=choose_scenarios(settings.cooling))
 
 
 def run_fit(
@@ -120,7 +117,7 @@ def run_fit(
     out : path
         The run folder; made when it is not there.
     settings : FitSettings, optional
-        What to fit and how. Default: every channel and cooling scenario.
+        What to fit and how. Default: every channel, the standard cooling scenarios.
     jobs : int
         Number of objects to fit at a time, each in a process of its own when more than one.
     progress : callable, optional
@@ -177,7 +174,7 @@ def fit_sample(
     out : path
         The run folder; a call with the same arguments goes on where an earlier one stopped.
     settings : FitSettings, optional
-        What to fit and how. Default: every channel and cooling scenario.
+        What to fit and how. Default: every channel, the standard cooling scenarios.
     jobs : int
         Number of objects to fit at a time.
     columns : mapping of str to str, optional
@@ -204,7 +201,7 @@ def fit_sample(
     >>> import decayinfer as di
     >>> rows = [("Rush 7", 0.2, 5e-14, 20.0, 1.0), ("Rush 9", 0.4, 3e-14, 8.0, 0.5)]
     >>> header = ("name", "period", "period_derivative", "braking_index", "braking_index_err")
-    >>> scenario = di.scenario_names()[0]
+    >>> scenario = "bsk24-protons-iron"
     >>> settings = di.FitSettings(channels=("constant", "phonon"), cooling=(scenario,))
     >>> with TemporaryDirectory() as folder:
     ...     run = di.fit_sample(Table(rows=rows, names=header), out=folder, settings=settings)
