@@ -188,28 +188,23 @@ def simulate(
 
 @app.command()
 @_guarded
-def cooling(name: Annotated[str, typer.Argument(metavar="[NAME]", show_default=False)] = "") -> None:
+def cooling(
+    name: Annotated[str, typer.Argument(metavar="[NAME]", show_default=False)] = "",
+    as_csv: Annotated[bool, typer.Option("--csv", help="Print a CSV table; errors are fractions.")] = False,
+) -> None:
     """List the cooling scenarios, or show one."""
+    from decayinfer.cooling.listing import HEADER, card, listing, to_csv
     from decayinfer.cooling.registry import load_scenario, scenario_names
 
-    if name:
-        return _show_scenario(load_scenario(name))
-    scenarios = [load_scenario(each) for each in scenario_names()]
-    rows = [
-        (s.name, s.title, "provisional" if s.provisional else "computed", f"{s.weight:g}") for s in scenarios
-    ]
-    print_table(("name", "scenario", "basis", "weight"), rows)
-    return None
-
-
-def _show_scenario(scenario: Any) -> None:
-    basis = "provisional: built on scalings" if scenario.provisional else "computed cooling curves"
-    lines = [f"{scenario.name}: {scenario.title}", scenario.description.strip(), f"basis: {basis}"]
-    lines += [f"{key}: {value}" for key, value in scenario.properties.items()]
-    lines += [f"largest fit error in {key}: {100 * value:.2g} %" for key, value in scenario.fit_error.items()]
-    lines += [f"source: {source}" for source in scenario.sources]
-    for line in lines:
-        stdout().print(line, markup=False, highlight=False)
+    scenarios = [load_scenario(each) for each in ([name] if name else scenario_names())]
+    if as_csv:
+        typer.echo(to_csv(scenarios))
+    elif name:
+        for line in card(scenarios[0]):
+            stdout().print(line, markup=False, highlight=False)
+    else:
+        print_table(HEADER, listing(scenarios))
+        typer.echo("standard: fitted when --cooling names none; --cooling all takes all but the provisional")
 
 
 def _fit_and_show(catalog: "Catalog", out: Path, settings: "FitSettings", jobs: int) -> None:
