@@ -41,7 +41,11 @@ Columns = Annotated[
     typer.Option("--column", metavar="OURS=THEIRS", help="Name of a column in the table; repeat for more."),
 ]
 Cooling = Annotated[
-    str, typer.Option(metavar="LIST", help="Cooling scenarios, or all; default the standard set.")
+    str,
+    typer.Option(
+        metavar="LIST",
+        help="Cooling scenarios, tables of age, mass and temperature of your own, or all; default the standard set.",
+    ),
 ]
 Jobs = Annotated[int, typer.Option(min=1, help="Objects to fit at a time.")]
 
@@ -134,7 +138,7 @@ def fit(
 
         settings = FitSettings(
             channels=_names(channels),
-            cooling=_names(cooling),
+            cooling=_scenarios(cooling),
             draws=draws,
             tune=tune,
             chains=chains,
@@ -181,7 +185,7 @@ def simulate(
         from decayinfer.results.tables import check_new_table, save_table
 
         check_new_table(out)  # before the work
-        asked = FitSettings(channels=_names(channels), cooling=_names(cooling), seed=seed)
+        asked = FitSettings(channels=_names(channels), cooling=_scenarios(cooling), seed=seed)
         save_table(simulate_table(objects, seed, resolve_settings(asked)), out)
     typer.echo(f"wrote {objects} invented objects to {out}")
 
@@ -253,6 +257,20 @@ def _chosen(catalog: "Catalog", names: tuple[str, ...]) -> "Catalog":
 
 def _names(text: str) -> tuple[str, ...]:
     return tuple(name.strip() for name in text.split(",") if name.strip())
+
+
+def _scenarios(text: str) -> tuple[str, ...]:
+    """Return the names in --cooling; what looks like a file becomes a scenario first."""
+    return tuple(_from_file(name) if Path(name).suffix else name for name in _names(text))
+
+
+def _from_file(path: str) -> str:
+    from decayinfer.cooling.user_table import register_table
+
+    scenario = register_table(path)
+    said = f"{path} is the cooling scenario {scenario.name}, fitted to {scenario.fit_error['temperature']:.2%} in T_b"
+    stderr().print(said, markup=False, highlight=False, soft_wrap=True)
+    return scenario.name
 
 
 def _mapping(pairs: list[str] | None) -> dict[str, str]:

@@ -1,5 +1,6 @@
 """A cooling scenario from the user's own table of temperature against age and mass."""
 
+import re
 from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
@@ -15,12 +16,13 @@ from decayinfer.cooling import form
 from decayinfer.cooling.eos import EquationOfState, get_eos
 from decayinfer.cooling.fitting import LN_MEASURED, YOUNGEST, Fit, Target, fit_form
 from decayinfer.cooling.gradients import Grid
+from decayinfer.cooling.registry import ALL, register_scenario, scenario_names
 from decayinfer.cooling.scenario import Scenario
 from decayinfer.cooling.structure_fit import fit_structure
 from decayinfer.errors import InputError
 from decayinfer.physics.structure import redshift_factor
 
-__all__ = ["scenario_from_table"]
+__all__ = ["register_table", "scenario_from_table"]
 
 type Array = NDArray[np.float64]
 type Curves = Mapping[float, tuple[ArrayLike, ArrayLike]]
@@ -126,6 +128,29 @@ def scenario_from_table(
         ln_radius=ln_radius,
         ln_inertia=ln_inertia,
     )
+
+
+def register_table(path: str | Path) -> Scenario:
+    """Fit a table on disk and register it as a scenario of this process, named after the file.
+
+    Parameters
+    ----------
+    path : path
+        A table as `scenario_from_table` reads it; the star is that of its default equation of state.
+
+    Raises
+    ------
+    InputError
+        If the table cannot be used, or a scenario has its name already.
+    """
+    name = re.sub(r"[^A-Za-z0-9]+", "-", Path(path).stem).strip("-")
+    if name in (*scenario_names(), ALL, ""):
+        raise InputError(
+            f"{Path(path).name}: its scenario would be called {name!r}, which is taken; rename the file"
+        )
+    scenario = scenario_from_table(path, name=name)
+    register_scenario(scenario)
+    return scenario
 
 
 def _read(source: Any, columns: Mapping[str, str]) -> _Rows:
