@@ -70,5 +70,5 @@ def test_the_nodes_follow_channels_without_temperature(tools, channel, rng):
 
 @pytest.mark.parametrize("name", SHARP)
 def test_triplet_pairing_sets_in_faster_than_the_nodes_follow(tools, name, rng):
-    """A known limit: half a per cent in age and birth field, below the error of these scenarios' own temperature fits."""
+    """A known limit: half a per cent in age and birth field, below the error of their own temperature fits."""
     assert np.all(errors(tools, name, "impurity+phonon+hall", rng, 40) < 1e-2)
