@@ -62,7 +62,8 @@ def ln_index_excess(z: Any, problem: Problem) -> Any:
     """Return ln(n - 3), unwarped."""
     xp = namespace(z[0], problem.spin)
     centre, width, tail = problem.warp[0], problem.warp[1], problem.warp[2]
-    return centre + width * xp.sinh(tail * z[1]) / tail
+    # ln S(t) = -softplus(-4 ln(t_a/t)), see `decayinfer.physics.hall.attractor_switch`
+    return centre + width * xp.sinh(tail * z[1]) / tail - problem.shear * _softplus(xp, -4.0 * z[5])
 
 
 def history_inputs(z: Any, problem: Problem) -> tuple[Any, ...]:

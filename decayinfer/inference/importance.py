@@ -5,6 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from decayinfer.inference.coordinates import ln_index_excess
 from decayinfer.inference.density import evaluate
 from decayinfer.inference.diagnostics import pareto_k
 from decayinfer.inference.problem import Problem
@@ -115,8 +116,8 @@ def importance_sample(
 def rewarp(points: Array, source: Problem, target: Problem) -> Array:
     """Move draws from one problem's warp of the index to another's."""
     out = points.copy()
-    centre, width, tail = source.warp
-    excess = centre + width * np.sinh(tail * points[:, 1]) / tail
+    excess = ln_index_excess(list(points.T), source)
     centre, width, tail = target.warp
-    out[:, 1] = np.arcsinh(tail * (excess - centre) / width) / tail
+    unsheared = excess - ln_index_excess(list(points.T), target) + centre + width * np.sinh(tail * points[:, 1]) / tail
+    out[:, 1] = np.arcsinh(tail * (unsheared - centre) / width) / tail
     return out

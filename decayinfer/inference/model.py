@@ -57,7 +57,8 @@ def build_model(problem: Problem) -> pm.Model:
 # core dimensions of each number; that of ``active`` is also that of the coordinates
 _DIMENSIONS = {
     "spin": "(s)", "index": "(i)", "use_index": "()", "flags": "(f)", "active": "(coordinate)", "freeze": "(z)",
-    "table": "(b,p,d)", "scalars": "(c)", "structure": "(r,d)", "normals": "(m,n)", "warp": "(w)", "limits": "(l)",
+    "table": "(b,p,d)", "scalars": "(c)", "structure": "(r,d)", "normals": "(m,n)", "warp": "(w)",
+    "shear": "()", "limits": "(l)",
 }  # fmt: skip
 _SIGNATURE = ",".join(_DIMENSIONS[name] for name in Problem._fields) + "->(coordinate)"
 

@@ -53,6 +53,9 @@ class Problem(NamedTuple):
     warp : (3,)
         Centre c, width w and tail a of ln(n - 3) = c + (w/a) sinh(a z): the scatter factor gives n tails far
         wider than its core, which one step size cannot serve; drawn in, they mix well.
+    shear : ()
+        How much of ln S(t) goes into ln(n - 3), 1 or 0. With Hall drift alone and n free, ln(n - 3) falls as the switch
+        closes, along a bent ridge of many e-folds; sheared, the coordinate follows the drift before the switch.
     limits : (5,)
         Mass prior mean, sd and ln norm; ln of the largest age [yr]; scale of the ln scatter factor.
     """
@@ -68,15 +71,17 @@ class Problem(NamedTuple):
     structure: Any
     normals: Any
     warp: Any
+    shear: Any
     limits: Any
 
     def without_index(self) -> "Problem":
         """Return the same problem with the likelihood of n switched off."""
-        return self._replace(use_index=np.array(0.0), warp=_BROAD_WARP)
+        return self._replace(use_index=np.array(0.0), warp=_BROAD_WARP, shear=_hall_alone(self.flags))
 
 
 _NO_TAIL = 0.01  # sinh(a z)/a is z to a part in 1e4
 _BROAD_WARP = np.array([2.0, 1.2, _NO_TAIL])
+_FREE_WIDTH = 0.5  # an index known worse than this in ln(n - 3) counts as free
 
 
 def make_problem(pulsar: Pulsar, channel: Channel, scenario: Scenario, priors: Priors) -> Problem:
@@ -96,6 +101,8 @@ def make_problem(pulsar: Pulsar, channel: Channel, scenario: Scenario, priors: P
     active.append((1.0 - phonon) * max(impurity, hall))
     limit = not np.isfinite(pulsar.braking_index)
     observed = pulsar.braking_index_limit if limit else pulsar.braking_index
+    warp = _BROAD_WARP if limit or not channel.decays else _warp(pulsar, priors)
+    free = warp[1] > _FREE_WIDTH
     return Problem(
         spin=np.log([pulsar.period, pulsar.period_derivative, pulsar.characteristic_age]),
         index=np.array([observed, *_errors(pulsar, limit), float(limit)]),
@@ -107,7 +114,8 @@ def make_problem(pulsar: Pulsar, channel: Channel, scenario: Scenario, priors: P
         scalars=scenario.scalars,
         structure=np.array([scenario.ln_radius, scenario.ln_inertia]),
         normals=priors.normals(),
-        warp=_BROAD_WARP if limit or not channel.decays else _warp(pulsar, priors),
+        warp=warp,
+        shear=_hall_alone(channel.flags) if free else np.array(0.0),
         limits=np.array(
             [priors.mass_mean, priors.mass_sd, priors.mass_ln_norm, np.log(priors.max_age), priors.scatter_sd]
         ),
@@ -121,6 +129,10 @@ def _warp(pulsar: Pulsar, priors: Priors) -> NDArray[np.float64]:
     width = min((1.0 + 0.9 * priors.scatter_sd) * error / excess, 1.2)
     tail = max(0.85 * priors.scatter_sd * (1.0 - width / 1.2), _NO_TAIL)
     return np.array([np.log(excess), width, tail])
+
+
+def _hall_alone(flags: Any) -> NDArray[np.float64]:
+    return np.array(float(flags[2] > 0.0 and flags[0] == flags[1] == 0.0))
 
 
 def _errors(pulsar: Pulsar, limit: bool) -> tuple[float, float]:
