@@ -9,6 +9,7 @@ from decayinfer.inference.density import evaluate
 from decayinfer.inference.diagnostics import bulk_ess, r_hat, tail_ess
 from decayinfer.inference.engine import NutsRun, engine
 from decayinfer.inference.importance import Weighted, importance_sample
+from decayinfer.inference.pilot import disagreement, pilot
 from decayinfer.inference.problem import Problem
 from decayinfer.inference.settings import FitSettings
 
@@ -81,6 +82,7 @@ STANDARD = Standard()
 _PROPOSALS = 4000
 _CANDIDATES = 150
 _REFITS = 2
+_FAR = 3.5  # standard deviations between chains and weights that mean a missed mode
 
 
 def explore(
@@ -133,14 +135,16 @@ def _attempt(
         target_accept=0.95 if longer else 0.8,
     )
     flat = run.points.reshape(-1, run.points.shape[-1])
+    wider = pilot(problem, rng) if wider is None else wider
     weighted = importance_sample(problem, flat, stretch * _PROPOSALS, rng, wider=wider)
     quality = _quality(problem, run)
-    converged = quality.meets(STANDARD) and _sound(weighted, STANDARD.ess)
+    complete = _agree(problem, flat, weighted, quality)
+    converged = quality.meets(STANDARD) and _sound(weighted, STANDARD.ess) and complete
     for _ in range(0 if converged else _REFITS):
         # refit to the weighted draws: the proposal inherits what made the chains mix poorly
         refitted = weighted.resample(flat.shape[0], rng)
         weighted = importance_sample(problem, refitted, 2 * stretch * _PROPOSALS, rng, wider=wider)
-        if quality.meets(STANDARD) and _sound(weighted, STANDARD.ess):
+        if quality.meets(STANDARD) and _sound(weighted, STANDARD.ess) and complete:
             converged = True
             break
         if _sound(weighted, 2.0 * STANDARD.ess):
@@ -153,6 +157,13 @@ def _attempt(
 
 def _sound(weighted: Weighted, least: float) -> bool:
     return weighted.effective_size >= least and weighted.pareto_k < STANDARD.pareto_k
+
+
+def _agree(problem: Problem, draws: Array, weighted: Weighted, quality: Quality) -> bool:
+    """Whether chains and weights describe one distribution; they do not where the chains missed a mode."""
+    used = problem.active > 0.0
+    distance = disagreement(draws[:, used], weighted.points[:, used], weighted.weights)
+    return distance < _FAR * 0.5 * float(np.sqrt(1.0 / quality.ess_bulk + 1.0 / weighted.effective_size))
 
 
 def _topped_up(
