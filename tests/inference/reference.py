@@ -6,8 +6,8 @@ s is age since birth, t the age now, b = B/B_now, w = 1/b; at fixed total rate R
 
     -\dot b/b = A\,[\varphi(s) + q] + A\,\eta\,S(s)\,b, \qquad A = R/(1 + q + \eta S(t)), \quad \varphi(t) = 1
 
-With J(s) the integral of the Ohmic rate from s to now, (w e^J)' = A eta S e^J, hence w = e^{-J} (1 - A eta E) with E the
-integral of S e^J from s to now. The age solves G(t) = tau, where G is the integral of b^2 over the life.
+With J(s) the integral of the Ohmic rate from s to now, (w e^J)' = A eta S e^J, hence w = e^{-J} (1 - A eta E) with
+E the integral of S e^J from s to now. The age solves G(t) = tau, where G is the integral of b^2 over the life.
 
 The root is found numerically, inside a bracket; its derivatives are those of the implicit function theorem,
 dy/dtheta = (e_tau - d ln G/d theta)/(d ln G/dy) with y = ln t and e_tau the unit vector of ln tau.

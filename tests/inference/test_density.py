@@ -94,9 +94,13 @@ def forward_map(tools, forward, numbers, channel, scenario, law, names, base):
     return mapped
 
 
-@pytest.mark.parametrize(("name", "law"), [("candle", "exponential"), ("urca", "none"), ("slow-candle", "cut")])
+@pytest.mark.parametrize(
+    ("name", "law"), [("candle", "exponential"), ("urca", "none"), ("slow-candle", "cut")]
+)
 @pytest.mark.parametrize("channel", CHANNELS)
-def test_density_is_the_prior_times_the_determinant_of_the_forward_map(tools, forward, channel, name, law, rng):
+def test_density_is_the_prior_times_the_determinant_of_the_forward_map(
+    tools, forward, channel, name, law, rng
+):
     r"""p(z, ln P, ln Pdot) = p(physical) |d physical/d(z, ln P, ln Pdot)|: the change of variables itself.
 
     The determinant of (physical) -> (coordinates, ln P, ln Pdot) is taken by central differences of the forward
@@ -132,7 +136,9 @@ def model(tools):
     return model, model.compile_logp(mode=Mode("py", "merge"))
 
 
-@pytest.mark.parametrize("changes", [{}, {"braking_index": np.nan, "braking_index_limit": 15.0}], ids=["n", "limit"])
+@pytest.mark.parametrize(
+    "changes", [{}, {"braking_index": np.nan, "braking_index_limit": 15.0}], ids=["n", "limit"]
+)
 @pytest.mark.parametrize("scenario", ["candle", "slow-candle"])
 @pytest.mark.parametrize("channel", CHANNELS)
 def test_numpy_density_is_that_of_the_model(tools, model, channel, scenario, changes, rng):
@@ -172,7 +178,9 @@ def test_the_sampler_s_density_and_gradient(tools, channel, scenario, rng):
     compiled = Compiled(numbers)
     for point in tools.typical_points(numbers, 3, rng):
         value, gradient = compiled(point)
-        assert value == pytest.approx(evaluate(point[None], numbers).ln_density(numbers)[0], rel=1e-9, abs=1e-9)
+        assert value == pytest.approx(
+            evaluate(point[None], numbers).ln_density(numbers)[0], rel=1e-9, abs=1e-9
+        )
         h = 1e-3
         steps = h * np.array([-2.0, -1.0, 1.0, 2.0])[:, None, None] * np.eye(8)
         around = evaluate((point + steps).reshape(-1, 8), numbers).ln_density(numbers).reshape(4, 8)

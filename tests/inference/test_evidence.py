@@ -1,4 +1,7 @@
-"""Evidences against forward Monte Carlo, brute-force quadrature and a nested sampler; tests/studies holds the full runs."""
+"""Evidences against forward Monte Carlo, brute-force quadrature and a nested sampler.
+
+The full runs are in tests/studies, with their results.
+"""
 
 import json
 from pathlib import Path
@@ -72,7 +75,9 @@ def grid_evidence(numbers, axes):
     assert len(active) == len(axes)
     points = np.zeros((int(np.prod([axis.size for axis in axes])), 8))
     points[:, active] = np.stack(np.meshgrid(*axes, indexing="ij"), axis=-1).reshape(-1, len(axes))
-    ln_density = np.concatenate([evaluate(part, numbers).ln_density(numbers) for part in np.array_split(points, 16)])
+    ln_density = np.concatenate(
+        [evaluate(part, numbers).ln_density(numbers) for part in np.array_split(points, 16)]
+    )
     ln_density += 0.5 * (8 - len(active)) * np.log(2.0 * np.pi)
     top = ln_density.max()
     total = np.exp(ln_density - top).reshape([axis.size for axis in axes])
@@ -98,8 +103,12 @@ def test_evidence_of_impurity_decay_by_brute_force(tools):
 @pytest.mark.slow
 def test_evidence_of_a_constant_dipole_by_brute_force(tools):
     """Two coordinates; and exactly n = 3, so that the evidence of n is one number."""
-    numbers = tools.problem("constant", braking_index=3.4, braking_index_err_minus=0.5, braking_index_err_plus=0.5)
-    star = tools.replace(tools.WREN, braking_index=3.4, braking_index_err_minus=0.5, braking_index_err_plus=0.5)
+    numbers = tools.problem(
+        "constant", braking_index=3.4, braking_index_err_minus=0.5, braking_index_err_plus=0.5
+    )
+    star = tools.replace(
+        tools.WREN, braking_index=3.4, braking_index_err_minus=0.5, braking_index_err_plus=0.5
+    )
     fit = fit_channel(star, "constant", "candle", FitSettings())
     joint = grid_evidence(numbers, [np.linspace(-12.0, 7.0, 200), np.linspace(-12.0, 12.0, 200)])
     assert fit.ln_evidence_joint == pytest.approx(joint, abs=0.03)
@@ -111,14 +120,18 @@ def test_a_constant_dipole_in_plain_integrals(tools):
     """p(ln P, ln Pdot) of a constant field, with no coordinate at all.
 
     With x = P_0/P: ln B_0 = (ln P + ln Pdot)/2 + a function of mass, ln P_0 = ln P + ln x and t = tau_c (1 - x^2), so
-    that |d(ln B_0, ln P_0, t)/d(x, ln P, ln Pdot)| = tau_c (1 - x^2)/x + tau_c x = tau_c/x. The density is the integral over
-    mass and x of the priors times that.
+    that |d(ln B_0, ln P_0, t)/d(x, ln P, ln Pdot)| = tau_c (1 - x^2)/x + tau_c x = tau_c/x. The density is the
+    integral over mass and x of the priors times that.
     """
     priors, star, scenario = Priors(), tools.WREN, tools.scenario("candle")
     edges = [(edge - priors.mass_mean) / priors.mass_sd for edge in MASS_RANGE]
     mass_prior = stats.truncnorm(*edges, priors.mass_mean, priors.mass_sd)
-    field_prior = stats.norm(priors.birth_field_log10_mean * np.log(10), priors.birth_field_log10_sd * np.log(10))
-    period_prior = stats.norm(priors.birth_period_log10_mean * np.log(10), priors.birth_period_log10_sd * np.log(10))
+    field_prior = stats.norm(
+        priors.birth_field_log10_mean * np.log(10), priors.birth_field_log10_sd * np.log(10)
+    )
+    period_prior = stats.norm(
+        priors.birth_period_log10_mean * np.log(10), priors.birth_period_log10_sd * np.log(10)
+    )
 
     def over_mass(mass):
         size = {"radius_km": scenario.radius_km(mass), "inertia_45": scenario.inertia_45(mass)}

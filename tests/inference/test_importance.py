@@ -88,7 +88,9 @@ def gaussian(points):
     d = int(ACTIVE.sum())
     covariance = 0.4 * np.eye(d) + 0.6
     used, idle = points[:, ACTIVE > 0], points[:, ACTIVE == 0]
-    return stats.multivariate_normal(np.arange(d), covariance).logpdf(used) + stats.norm.logpdf(idle).sum(axis=1)
+    return stats.multivariate_normal(np.arange(d), covariance).logpdf(used) + stats.norm.logpdf(idle).sum(
+        axis=1
+    )
 
 
 def two_humps(points):

@@ -63,7 +63,9 @@ def test_density_of_the_observed_value_is_normalised(minus, plus):
     def density(x):
         return np.exp(ln_index_likelihood(x, 10.0, minus, plus, 0.0, 0.5))
 
-    whole = sum(integrate.quad(density, *edges, limit=200)[0] for edges in [(-300, 5), (5, 10), (10, 15), (15, 300)])
+    whole = sum(
+        integrate.quad(density, *edges, limit=200)[0] for edges in [(-300, 5), (5, 10), (10, 15), (15, 300)]
+    )
     assert whole == pytest.approx(1.0, abs=1e-6)
 
 

@@ -51,7 +51,9 @@ def register_scenarios():
 
 def problem(channel, cooling="candle", star=WREN, priors=None, **changes):
     """The numbers of one posterior problem."""
-    return make_problem(replace(star, **changes), load_channel(channel), scenario(cooling), priors or Priors())
+    return make_problem(
+        replace(star, **changes), load_channel(channel), scenario(cooling), priors or Priors()
+    )
 
 
 def urca_scenario():

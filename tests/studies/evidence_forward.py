@@ -11,11 +11,11 @@ Averaged over a bin of width w in ln P and ln Pdot around the object, the joint 
 
 whose right-hand side needs nothing but stars drawn from the prior and followed forward by the equations
 (tests/inference/forward.py). The inference gives p at the centre; its ratio to the average is the same integral by
-3 x 3 Gauss-Legendre nodes, evaluated at one set of importance-weighted points. So no bias of the bin is left, and the bin may
-be wide enough to catch many stars. The evidence of the spin alone, p(ln P, ln Pdot), is the same with L = 1.
+3 x 3 Gauss-Legendre nodes, evaluated at one set of importance-weighted points. So no bias of the bin is left, and
+the bin may be wide enough to catch many stars. The evidence of the spin alone, p(ln P, ln Pdot), is the same with L = 1.
 
-Stars that cannot end in the bin are not followed, which changes nothing. Field decays and period grows, hence: the age is at
-most the characteristic age; the birth field is at least that of today; the birth period is at most that of today; and
+Stars that cannot end in the bin are not followed, which changes nothing. Field decays and period grows, hence: the
+age is at most the characteristic age; the birth field is at least that of today; the birth period is at most that of today; and
 P^2 - P_0^2 <= 2 C B_0^2 t.
 """
 
@@ -120,7 +120,10 @@ def simulated(channel, scenario_name, star, draws, rng, *, width=WIDTH, priors=N
         spin.append(factor[kept][inside])
         joint.append(factor[kept][inside] * likelihood)
     total = max(draws // BATCH, 1) * min(draws, BATCH)
-    return {"joint": _mean(np.concatenate(joint), total, width), "spin": _mean(np.concatenate(spin), total, width)}
+    return {
+        "joint": _mean(np.concatenate(joint), total, width),
+        "spin": _mean(np.concatenate(spin), total, width),
+    }
 
 
 def _mean(weights, total, width):
@@ -143,7 +146,10 @@ def inferred(channel, scenario_name, star, *, width=WIDTH, priors=None, seed=1):
     }
     reported = {
         "joint": (fit.ln_evidence_joint, fit.ln_evidence_joint_err),
-        "spin": (fit.ln_evidence_joint - fit.ln_evidence, float(np.hypot(fit.ln_evidence_err, fit.ln_evidence_joint_err))),
+        "spin": (
+            fit.ln_evidence_joint - fit.ln_evidence,
+            float(np.hypot(fit.ln_evidence_err, fit.ln_evidence_joint_err)),
+        ),
     }
     out = {}
     for kind, (problem, points) in coordinates.items():
@@ -183,7 +189,9 @@ def compare(channel, scenario, draws, seed, star=OBJECT):
 
 
 def main():
-    parser = argparse.ArgumentParser(description=__doc__, formatter_class=argparse.RawDescriptionHelpFormatter)
+    parser = argparse.ArgumentParser(
+        description=__doc__, formatter_class=argparse.RawDescriptionHelpFormatter
+    )
     parser.add_argument("--draws", type=int, default=2_000_000)
     parser.add_argument("--seed", type=int, default=1)
     chosen = parser.parse_args()
@@ -201,7 +209,11 @@ def main():
                 flush=True,
             )
     star = {k: v for k, v in vars(OBJECT).items() if isinstance(v, float) and np.isfinite(v)}
-    print(recording.write("evidence_forward", rows, draws=chosen.draws, seed=chosen.seed, bin_width=WIDTH, star=star))
+    print(
+        recording.write(
+            "evidence_forward", rows, draws=chosen.draws, seed=chosen.seed, bin_width=WIDTH, star=star
+        )
+    )
     worst = max(max(abs(row["joint_pull"]), abs(row["spin_pull"])) for row in rows)
     return 0 if worst < 3.5 else 1
 

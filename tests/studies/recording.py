@@ -12,7 +12,11 @@ HERE = Path(__file__).parent
 def write(name, rows, **settings):
     """Write rows (a list of plain dicts) to NAME.json beside the studies."""
     commit = subprocess.run(
-        ["git", "describe", "--always", "--dirty", "--abbrev=12"], cwd=HERE, capture_output=True, text=True, check=True
+        ["git", "describe", "--always", "--dirty", "--abbrev=12"],
+        cwd=HERE,
+        capture_output=True,
+        text=True,
+        check=True,
     )
     record = {
         "study": name,
