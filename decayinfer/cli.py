@@ -152,7 +152,7 @@ def fit(
 @_guarded
 def demo(
     out: Annotated[Path, typer.Option(metavar="RUN", help="Run folder.")] = Path("decayinfer-demo"),
-    jobs: Jobs = 1,
+    jobs: Jobs = 2,
 ) -> None:
     """Do the whole job on the invented sample that ships with the package, and compare with its truths."""
     with one_thread():
