@@ -118,6 +118,11 @@ def rewarp(points: Array, source: Problem, target: Problem) -> Array:
     out = points.copy()
     excess = ln_index_excess(list(points.T), source)
     centre, width, tail = target.warp
-    unsheared = excess - ln_index_excess(list(points.T), target) + centre + width * np.sinh(tail * points[:, 1]) / tail
+    unsheared = (
+        excess
+        - ln_index_excess(list(points.T), target)
+        + centre
+        + width * np.sinh(tail * points[:, 1]) / tail
+    )
     out[:, 1] = np.arcsinh(tail * (unsheared - centre) / width) / tail
     return out

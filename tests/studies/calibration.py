@@ -2,7 +2,8 @@
 
     python tests/studies/calibration.py --channel phonon --simulations 200
 
-Parameters are drawn from the full prior, evolved forward to P, Pdot and n, and measured; the posterior of each invented object is
+Parameters are drawn from the full prior, evolved forward to P, Pdot and n, and measured; the posterior of each
+invented object is
 sampled, and the rank of each true value among its draws must be uniform. Objects are selected by P, tau_c and the
 measured n alone: those are data, so selection leaves the ranks uniform. The error of n is drawn
 without looking at n, since an error that grew with the true index would itself be a measurement.
