@@ -22,6 +22,7 @@ __all__ = [
     "SymmetryEnergy",
     "beta_equilibrium",
     "direct_urca_mass",
+    "number_density",
     "urca_opening",
 ]
 

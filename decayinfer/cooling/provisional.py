@@ -18,7 +18,7 @@ from decayinfer.cooling import form
 from decayinfer.cooling.scenario import Scenario, write_scenario
 from decayinfer.physics import constants, structure
 
-__all__ = ["photon_time", "provisional_scenario", "write_provisional"]
+__all__ = ["candle_temperature", "photon_time", "provisional_scenario", "write_provisional"]
 
 RADIUS_KM = 12.0  #: radius of every provisional star [km]
 CANDLE_TEMPERATURE_8 = 3.45  #: of Yakovlev et al. 2011 (from memory)

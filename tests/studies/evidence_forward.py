@@ -12,13 +12,12 @@ Averaged over a bin of width w in ln P and ln Pdot around the object, the joint 
 whose right-hand side needs nothing but stars drawn from the prior and followed forward by the equations
 (tests/inference/forward.py). The inference gives p at the centre; its ratio to the average is the same integral by
 3 x 3 Gauss-Legendre nodes, evaluated at one set of importance-weighted points. So no bias of the bin is left, and
-the bin may be wide enough to catch many stars. The evidence of the spin alone, p(ln P, ln Pdot), is the same with L
-= 1.
+the bin may be wide enough to catch many stars. The evidence of the spin alone, p(ln P, ln Pdot), is the same
+with L = 1.
 
 Stars that cannot end in the bin are not followed, which changes nothing. Field decays and period grows, hence: the
 age is at most the characteristic age; the birth field is at least that of today; the birth period is at most that of
-today; and
-P^2 - P_0^2 <= 2 C B_0^2 t.
+today; and P^2 - P_0^2 <= 2 C B_0^2 t.
 """
 
 import argparse
