@@ -45,14 +45,17 @@ class PlainPosterior:
         self.default = np.concatenate([[self.priors.mass_mean], means, [0.0]])
 
     def __call__(self, free):
+        with np.errstate(all="ignore"):  # walkers may propose fields that have died
+            value = self.ln_density(free)
+        return value if np.isfinite(value) else -np.inf
+
+    def ln_density(self, free):
         x = self.default.copy()
         x[self.free] = free
         ln_prior = self.ln_prior(x)
         if not np.isfinite(ln_prior):
             return -np.inf
         ln_period, ln_derivative, index = self.today(x)
-        if not np.isfinite(index):
-            return -np.inf
         gaps = np.array(
             [ln_period - np.log(self.star.period), ln_derivative - np.log(self.star.period_derivative)]
         )

@@ -29,7 +29,7 @@ OBJECTS = {
     "barely above three": {"braking_index": 3.0 + 1e-9},
     "huge error": {"braking_index_err_minus": 1e6, "braking_index_err_plus": 1e6},
     "tiny error": {"braking_index_err_minus": 1e-6, "braking_index_err_plus": 1e-6},
-    "one-sided": {"braking_index_err_minus": 0.01, "braking_index_err_plus": 30.0},
+    "one-sided": {"braking_index_err_minus": 0.3, "braking_index_err_plus": 6.0},
     "limit": {"braking_index": np.nan, "braking_index_limit": 15.0},
     "limit of three": {"braking_index": np.nan, "braking_index_limit": 3.0},
     "limit without error": {

@@ -93,4 +93,4 @@ def test_an_index_alone_hardly_moves_the_mass(tools):
     shift = abs(fit.posterior("mass").mean() - fit.prior("mass").mean()) / fit.prior("mass").std()
     assert shift < 0.5
     before, after = (np.log(draws("braking_index") - 3.0).std() for draws in (fit.prior, fit.posterior))
-    assert after < 0.4 < 0.6 < before
+    assert after < 0.5 * before
