@@ -62,7 +62,7 @@ def layer(module):
 def test_imports_point_one_way(path):
     """catalog < physics < cooling < channels < inference < results < report < command line; catalog may use physics."""
     own = layer(name_of(path))
-    if own is None or path.stem in SHELL and path.parent == PACKAGE:
+    if own is None or (path.stem in SHELL and path.parent == PACKAGE):
         return
     assert own in LAYERS or own in COMMON, f"{own} has no place among the layers"
     allowed = COMMON | {own} | (set() if own in COMMON else set(LAYERS[: LAYERS.index(own)]))
@@ -126,7 +126,9 @@ def test_no_bare_number_meets_pytensor(path):
         if not isinstance(node, ast.Call) or not isinstance(node.func, ast.Attribute):
             continue
         owner = getattr(node.func.value, "id", "")
-        called = isinstance(node.func.value, ast.Call) and getattr(node.func.value.func, "id", "") == "namespace"
+        called = (
+            isinstance(node.func.value, ast.Call) and getattr(node.func.value.func, "id", "") == "namespace"
+        )
         if owner not in {"xp", "pt"} and not called:
             continue
         if node.func.attr in {"log", "exp", "sqrt", "log1p", "expm1", "sinh", "cosh", "sin", "cos", "erfc"}:
@@ -151,7 +153,11 @@ def test_modules_are_small(path):
 
 def test_nothing_prints_outside_the_command_line():
     for path in MODULES:
-        calls = [n for n in ast.walk(tree_of(path)) if isinstance(n, ast.Call) and getattr(n.func, "id", "") == "print"]
+        calls = [
+            n
+            for n in ast.walk(tree_of(path))
+            if isinstance(n, ast.Call) and getattr(n.func, "id", "") == "print"
+        ]
         if path.parent != PACKAGE or path.stem not in SHELL:
             assert not calls, path
 
@@ -167,7 +173,12 @@ def test_the_top_level_holds_nothing_else():
 
 def test_no_machine_path_in_the_repository():
     pattern = re.compile(r"(?<![\w./])/(?:" + "|".join(("work", "root", "home")) + r")/\w")
-    for path in [*MODULES, *(ROOT / "tests").rglob("*.py"), *(ROOT / "docs").rglob("*.md"), ROOT / "README.md"]:
+    for path in [
+        *MODULES,
+        *(ROOT / "tests").rglob("*.py"),
+        *(ROOT / "docs").rglob("*.md"),
+        ROOT / "README.md",
+    ]:
         assert not pattern.search(path.read_text(encoding="utf-8")), path
 
 

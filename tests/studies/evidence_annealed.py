@@ -53,12 +53,19 @@ def annealed(numbers, draws, particles, seed):
         for _ in range(RUNS):
             start = {"coordinates": draws[rng.choice(len(draws), particles, replace=False)]}
             trace = pm.sample_smc(
-                particles, start=start, chains=1, cores=1, random_seed=int(rng.integers(2**31)), progressbar=False
+                particles,
+                start=start,
+                chains=1,
+                cores=1,
+                random_seed=int(rng.integers(2**31)),
+                progressbar=False,
             )
             stages = trace["sample_stats"]["log_marginal_likelihood"].values.ravel()[-1]
             found.append(float(np.ravel(stages)[-1]))
     ratios = np.exp(np.array(found) - np.max(found))
-    return float(np.max(found) + np.log(ratios.mean())), float(ratios.std(ddof=1) / ratios.mean() / np.sqrt(RUNS))
+    return float(np.max(found) + np.log(ratios.mean())), float(
+        ratios.std(ddof=1) / ratios.mean() / np.sqrt(RUNS)
+    )
 
 
 def compare(star, channel, particles, seed, scenario="candle"):
@@ -77,7 +84,9 @@ def compare(star, channel, particles, seed, scenario="candle"):
 
 
 def main():
-    parser = argparse.ArgumentParser(description=__doc__, formatter_class=argparse.RawDescriptionHelpFormatter)
+    parser = argparse.ArgumentParser(
+        description=__doc__, formatter_class=argparse.RawDescriptionHelpFormatter
+    )
     parser.add_argument("--particles", type=int, default=2000)
     parser.add_argument("--seed", type=int, default=1)
     chosen = parser.parse_args()

@@ -2,8 +2,8 @@
 
     python tests/studies/evidence_nested.py
 
-The same conditioned density is integrated twice, for two invented objects and two channels: by the importance sample of a fit,
-and by nested sampling from a Gaussian reference three times as wide as the posterior.
+The same conditioned density is integrated twice, for two invented objects and two channels: by the importance
+sample of a fit, and by nested sampling from a Gaussian reference three times as wide as the posterior.
 """
 
 import sys
@@ -50,7 +50,11 @@ def compare(star, channel, live=LIVE):
         return max(value - norm.logpdf(z, centre, width).sum(), -1e300)
 
     sampler = NestedSampler(
-        ln_ratio, lambda u: centre + width * norm.ppf(u), used.size, nlive=live, rstate=np.random.default_rng(5)
+        ln_ratio,
+        lambda u: centre + width * norm.ppf(u),
+        used.size,
+        nlive=live,
+        rstate=np.random.default_rng(5),
     )
     sampler.run_nested(print_progress=False, dlogz=0.05)
     nested, nested_err = float(sampler.results.logz[-1]), float(sampler.results.logzerr[-1])
