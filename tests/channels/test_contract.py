@@ -136,7 +136,9 @@ def test_an_index_far_below_three_is_unreachable(tools, channel, scenario):
 def test_odd_input_ends_in_a_status(tools, kind):
     """No exception whatever the object, and a status with its reason."""
     star = replace(tools.WREN, **OBJECTS[kind])
-    old = star.characteristic_age > 1e7  # flagged by the reader; chains crawl along the largest age, in minutes
+    old = (
+        star.characteristic_age > 1e7
+    )  # flagged by the reader; chains crawl along the largest age, in minutes
     for channel in ("constant",) if old else ("constant", "phonon", "impurity+hall"):
         fit = fit_channel(star, channel, "candle", FitSettings())
         assert fit.status in Status

@@ -87,7 +87,10 @@ def forward_map(tools, forward, numbers, channel, scenario, law, names, base):
         centre, width, tail = numbers.warp
         seen["logit_mass"] = -np.log(1.0 / (seen["logit_mass"] - 1.0) - 1.0)
         if "warped_index" in seen:
-            seen["warped_index"] = np.arcsinh(tail * (seen["warped_index"] - centre) / width) / tail
+            excess = seen["warped_index"]
+            if numbers.shear:  # the coordinate follows the drift before the switch, n - 3 over S(t)
+                excess = excess + np.log1p(np.exp(-4.0 * seen["ln_attractor_ratio"]))
+            seen["warped_index"] = np.arcsinh(tail * (excess - centre) / width) / tail
         used = [name for name, active in zip(COORDINATES, numbers.active, strict=True) if active]
         return np.array([seen[name] for name in (*used, "ln_period", "ln_period_derivative")])
 
@@ -107,23 +110,34 @@ def test_density_is_the_prior_times_the_determinant_of_the_forward_map(
     simulator, which knows nothing of the closed Jacobian. Prior densities are scipy's. Coordinates that the
     channel does not use are standard normal.
     """
-    scenario, priors = tools.scenario(name), Priors(freeze_out=law)
-    numbers = tools.problem(channel, name, priors=priors)
-    chosen = prior_of(channel, law, priors)
+    numbers = tools.problem(channel, name, priors=Priors(freeze_out=law))
     for point in tools.typical_points(numbers, 2, rng):
-        evaluation = evaluate(point[None], numbers)
-        draws = tools.draws_of(forward, evaluation.physical)[0]
-        start = np.array([np.log(getattr(draws, n)) if chosen[n][1] else getattr(draws, n) for n in chosen])
-        ln_pdf = sum(chosen[n][0].logpdf(value) for n, value in zip(chosen, start, strict=True))
-        mapped = forward_map(tools, forward, numbers, channel, scenario, FREEZE_OUT[law], list(chosen), draws)
-        steps = np.where(np.array(list(chosen)) == "age", STEP * draws.age, STEP)
-        shifts = np.diag(steps)
-        both = mapped(start[:, None] + np.hstack([shifts, -shifts]))
-        half = len(steps)
-        slopes = (both[:, :half] - both[:, half:]) / (2.0 * steps)
-        idle = point[numbers.active == 0.0]
-        expected = ln_pdf - np.linalg.slogdet(slopes)[1] + stats.norm.logpdf(idle).sum()
-        assert evaluation.ln_prior[0] == pytest.approx(expected, abs=1e-5)
+        check_change_of_variables(tools, forward, numbers, point, channel, name, law)
+
+
+def test_sheared_coordinates_have_the_same_determinant(tools, forward, rng):
+    """Hall drift with n free samples n - 3 over the switch: a shear, whose determinant is one."""
+    numbers = tools.problem("hall").without_index()
+    assert numbers.shear == 1.0
+    for point in tools.typical_points(numbers, 3, rng):
+        check_change_of_variables(tools, forward, numbers, point, "hall", "candle", "none")
+
+
+def check_change_of_variables(tools, forward, numbers, point, channel, name, law):
+    scenario, chosen = tools.scenario(name), prior_of(channel, law, Priors(freeze_out=law))
+    evaluation = evaluate(point[None], numbers)
+    draws = tools.draws_of(forward, evaluation.physical)[0]
+    start = np.array([np.log(getattr(draws, n)) if chosen[n][1] else getattr(draws, n) for n in chosen])
+    ln_pdf = sum(chosen[n][0].logpdf(value) for n, value in zip(chosen, start, strict=True))
+    mapped = forward_map(tools, forward, numbers, channel, scenario, FREEZE_OUT[law], list(chosen), draws)
+    steps = np.where(np.array(list(chosen)) == "age", STEP * draws.age, STEP)
+    shifts = np.diag(steps)
+    both = mapped(start[:, None] + np.hstack([shifts, -shifts]))
+    half = len(steps)
+    slopes = (both[:, :half] - both[:, half:]) / (2.0 * steps)
+    idle = point[numbers.active == 0.0]
+    expected = ln_pdf - np.linalg.slogdet(slopes)[1] + stats.norm.logpdf(idle).sum()
+    assert evaluation.ln_prior[0] == pytest.approx(expected, abs=1e-5)
 
 
 # --- NumPy and PyMC ---------------------------------------------------------------------------------------

@@ -163,3 +163,13 @@ def test_the_full_forward_study_passed():
         for kind in ("joint", "spin"):
             assert np.hypot(row[f"{kind}_simulated_err"], row[f"{kind}_inferred_err"]) < 0.05
             assert abs(row[f"{kind}_pull"]) < 3.5
+
+
+def test_the_annealed_study_passed():
+    """PyMC's sequential Monte Carlo of n given the spin, two objects and two channels: within 3.5 standard errors."""
+    rows = json.loads((STUDIES / "evidence_annealed.json").read_text())["rows"]
+    assert len({(row["object"], row["channel"]) for row in rows}) == 4
+    for row in rows:
+        assert row["status"] == "ok"
+        assert np.hypot(row["annealed_err"], row["fitted_err"]) < 0.1
+        assert abs(row["pull"]) < 3.5
