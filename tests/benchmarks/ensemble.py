@@ -114,7 +114,7 @@ def free_of(physical, names):
 
 
 def sample(posterior, starts, *, seconds, seed):
-    """Run the ensemble for a wall time; return its chain (steps, walkers, d) and the time it took.
+    """Run the ensemble for a processor time; return its chain (walkers, steps, d) and the time it took.
 
     Walkers start on draws of the posterior.
     """
@@ -122,18 +122,13 @@ def sample(posterior, starts, *, seconds, seed):
     random = np.random.RandomState(seed)
     sampler = emcee.EnsembleSampler(len(walkers), walkers.shape[1], posterior)
     sampler.random_state = random.get_state()
-    begun = time.perf_counter()
-    for _ in sampler.sample(walkers, iterations=100_000):
-        if time.perf_counter() - begun > seconds:
-            break
-    return sampler.get_chain(), time.perf_counter() - begun
+    begun = time.process_time()
+    state = walkers
+    while time.process_time() - begun < seconds:
+        state = sampler.run_mcmc(state, 10)
+    return sampler.get_chain().swapaxes(0, 1), time.process_time() - begun
 
 
-def least_ess(chain):
-    """Smallest effective size over the parameters, by the autocorrelation time, and that time in steps.
-
-    A chain shorter than fifty autocorrelation times gives too short a time, hence too large an effective size.
-    """
-    tau = emcee.autocorr.integrated_time(chain, quiet=True)
-    worst = float(np.nanmax(tau))
-    return chain.shape[0] * chain.shape[1] / worst, worst
+def autocorrelation_time(chain):
+    """Longest over the parameters, in steps; too short when the chain is shorter than fifty of it."""
+    return float(np.nanmax(emcee.autocorr.integrated_time(chain.swapaxes(0, 1), quiet=True)))
