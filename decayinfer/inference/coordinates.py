@@ -26,7 +26,7 @@ from decayinfer.physics.namespace import namespace
 __all__ = ["Physical", "history_inputs", "ln_index_excess", "ln_prior", "physical"]
 
 _LN_2PI = float(np.log(2.0 * np.pi))
-_AGE_EDGE = 64.0  # sharpness of the taper at the largest age: it is 2 % wide
+_AGE_EDGE = 8.0  # sharpness of the taper at the largest age: about 12 % wide, which a sampler can follow
 _LN_AGE_NORM = float(np.log(np.pi / _AGE_EDGE / np.sin(np.pi / _AGE_EDGE)))
 
 

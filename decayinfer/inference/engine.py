@@ -17,6 +17,8 @@ __all__ = ["Engine", "NutsRun", "engine"]
 
 type Array = NDArray[np.float64]
 
+_DEPTH = 7  # doublings of a trajectory; most draws take three, and a density that needs more is reported, not waited for
+
 
 @dataclass(frozen=True)
 class NutsRun:
@@ -125,7 +127,7 @@ class Engine:
             # the low-rank mass matrix follows the correlations that the amplitudes of the channels have
             trace = nutpie.sample(
                 compiled, draws=draws, tune=tune, chains=chains, cores=1, seed=seed, progress_bar=False,
-                adaptation="low_rank", target_accept=target_accept,
+                adaptation="low_rank", target_accept=target_accept, maxdepth=_DEPTH,
             )  # fmt: skip
         except (KeyboardInterrupt, SystemExit):
             raise

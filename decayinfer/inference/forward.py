@@ -31,7 +31,7 @@ type Array = NDArray[np.float64]
 
 _QUADRATURE = quadrature(96, 9.0)  # enough for old stars under the sharpest freeze-out
 _FROM_BIRTH = _QUADRATURE.weights - _QUADRATURE.to_now
-_AGE_EDGE = 64.0
+_AGE_EDGE = 8.0
 
 
 class PriorDraws(NamedTuple):
@@ -141,7 +141,7 @@ def _draw_age(n: int, priors: Priors, rng: np.random.Generator) -> Array:
     """Uniform up to the largest age, with the taper that the density has there."""
     accepted = np.empty(0)
     while accepted.size < n:
-        age = priors.max_age * 1.3 * rng.random(2 * n + 10)
+        age = priors.max_age * 2.5 * rng.random(2 * n + 10)
         keep = rng.random(age.size) < 1.0 / (1.0 + (age / priors.max_age) ** _AGE_EDGE)
         accepted = np.concatenate([accepted, age[keep]])
     return accepted[:n]

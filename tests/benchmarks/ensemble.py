@@ -68,10 +68,10 @@ class PlainPosterior:
 
     def ln_prior(self, x):
         mass, age = x[0], np.exp(x[8])
-        if not MASS_RANGE[0] < mass < MASS_RANGE[1] or age > 1.2 * self.priors.max_age:
+        if not MASS_RANGE[0] < mass < MASS_RANGE[1] or age > 5.0 * self.priors.max_age:
             return -np.inf
         ln = -0.5 * ((mass - self.priors.mass_mean) / self.priors.mass_sd) ** 2 + x[8]
-        ln -= np.log1p((age / self.priors.max_age) ** 64)
+        ln -= np.log1p((age / self.priors.max_age) ** 8)
         return ln - 0.5 * np.sum(((x[1:8] - self.means) / self.sds) ** 2)
 
     def today(self, x):

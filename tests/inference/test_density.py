@@ -66,14 +66,14 @@ def prior_of(channel, law, priors):
 
 
 class FlatAge:
-    """Constant birth rate up to the largest age, with the taper 1/(1 + (t/T)^64); normalised by quadrature."""
+    """Constant birth rate up to the largest age, with the taper 1/(1 + (t/T)^8); normalised by quadrature."""
 
     def __init__(self, largest):
         self.largest = largest
-        self.ln_norm = np.log(largest * integrate.quad(lambda x: 1.0 / (1.0 + x**64), 0.0, 2.0)[0])
+        self.ln_norm = np.log(largest * integrate.quad(lambda x: 1.0 / (1.0 + x**8), 0.0, np.inf)[0])
 
     def logpdf(self, age):
-        return -np.log1p((age / self.largest) ** 64) - self.ln_norm
+        return -np.log1p((age / self.largest) ** 8) - self.ln_norm
 
 
 def forward_map(tools, forward, numbers, channel, scenario, law, names, base):

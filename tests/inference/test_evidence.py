@@ -143,7 +143,7 @@ def test_a_constant_dipole_in_plain_integrals(tools):
 
     mass_part = integrate.quad(over_mass, *MASS_RANGE)[0]
     life_part = integrate.quad(over_life, 1e-9, 1.0, points=[1e-3, 1e-2, 0.1], limit=200)[0]
-    taper = np.pi / 64.0 / np.sin(np.pi / 64.0)
+    taper = np.pi / 8.0 / np.sin(np.pi / 8.0)
     expected = np.log(mass_part * life_part * star.characteristic_age / (priors.max_age * taper))
     numbers = tools.problem("constant").without_index()
     found = grid_evidence(numbers, [np.linspace(-12.0, 7.0, 300), np.linspace(-14.0, 14.0, 300)])

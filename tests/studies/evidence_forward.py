@@ -78,9 +78,9 @@ def stars(count, priors, largest_age, rng):
         age=age,
         umklapp_temperature=lognormal(priors.umklapp_median / 1e8, priors.umklapp_sd),
     )
-    # the birth rate is constant up to max_age, with a taper that is 2 % wide there and invisible at younger ages
-    taper = np.pi / 64.0 / np.sin(np.pi / 64.0)
-    return draws, largest_age / (priors.max_age * taper) / (1.0 + (age / priors.max_age) ** 64)
+    # the birth rate is constant up to max_age, tapered as 1/(1 + (t/max_age)^8)
+    taper = np.pi / 8.0 / np.sin(np.pi / 8.0)
+    return draws, largest_age / (priors.max_age * taper) / (1.0 + (age / priors.max_age) ** 8)
 
 
 def may_end_in_bin(draws, scenario, star, width):
