@@ -10,8 +10,8 @@ solver over that of the fit. The solver's density is evaluated here from the equ
     w(s) = e^{-J(s)} [1 - A\eta E(s)], \qquad \ln G(t) = \ln \int_0^t w^{-2}\, ds = \ln\tau
 
 with J the integral of the Ohmic rate and E that of S e^J, both from s to now; with ln T_b, radius and moment of inertia
-by splines through solved stars, 240 nodes instead of 36, and an age that is searched for anew. The same draws serve both
-sides, so that the difference of the two posteriors is known far better than either.
+by splines through solved stars, 240 nodes instead of 36, and an age that is searched for anew. The same draws serve
+both sides, so that the difference of the two posteriors is known far better than either.
 
 With triplet pairing the 36 nodes themselves are in question: there the fit is also put against itself at 240 nodes.
 """
@@ -233,15 +233,18 @@ def reweigh(points, problem, channel, star, nodes):
 
 def shift(before, after, ln_ratio):
     """Largest move of mean, median and the 16 and 84 % points, in standard deviations, of x and of ln x."""
-    weights = np.exp(ln_ratio - ln_ratio.max())
-    moves = []
+    finite = np.isfinite(before) & np.isfinite(after)  # a decay time is infinite where n rounds to 3
+    if np.mean(finite) < 0.99:
+        return np.nan
+    weights = np.exp(ln_ratio - ln_ratio.max())[finite]
+    moves = [0.0]
     for scale in (np.asarray, np.log):
-        x, y = scale(before), scale(after)
-        if x.std() > 1e-9 * np.abs(x).max():
+        x, y = scale(before[finite]), scale(after[finite])
+        if np.ptp(x) > 1e-9 * np.abs(x).max():  # a share that is always 1 does not move
             means = np.average(y, weights=weights) - x.mean()
             levels = _quantiles(y, weights) - _quantiles(x, np.ones_like(x))
             moves += list(np.append(levels, means) / x.std())
-    return max(moves, key=abs, default=0.0)
+    return max(moves, key=abs)
 
 
 def _quantiles(x, weights):
