@@ -6,8 +6,10 @@ import numpy as np
 import pytensor
 import pytensor.tensor as pt
 import pytest
+from numba.core.event import install_recorder
 
 from decayinfer.cooling import form
+from decayinfer.cooling.recipes import RECIPES
 from decayinfer.cooling.registry import standard_names
 from decayinfer.inference.compiled import flat_numbers
 from decayinfer.inference.coordinates import history_inputs, ln_index_excess, ln_prior
@@ -110,6 +112,28 @@ def test_half_the_cost_of_the_symbolic_density(bench, say, symbolic):
         )
         ratios.append(ratio)
     assert np.median(ratios[2:]) <= 0.5
+
+
+@pytest.mark.benchmark
+def test_computed_scenarios_cost_at_most_twice_the_provisional_one(bench, say):
+    """Every one of them, for the sum of all channels; and a change of scenario compiles nothing."""
+
+    def prepared(scenario):
+        problem = bench.problem(bench.stars[1], "impurity+phonon+hall", scenario)
+        return bench.density(problem), typical(problem)[0]
+
+    candle, points = prepared("candle")
+    candle(points[0])
+    ratios = {}
+    with install_recorder("numba:compile") as recorder:
+        for name in RECIPES:
+            density, own = prepared(name)
+            trials = [(density.seconds(own), candle.seconds(points)) for _ in range(9)]
+            ours, theirs = np.median(trials, axis=0)
+            ratios[name] = np.median([a / b for a, b in trials])
+            say(f"{name:24} {ours * 1e6:.0f} us; candle {theirs * 1e6:.0f} us; ratio {ratios[name]:.2f}")
+    assert not recorder.buffer
+    assert max(ratios.values()) <= 2.0
 
 
 def typical(problem):
