@@ -17,7 +17,7 @@ __all__ = ["Engine", "NutsRun", "engine"]
 
 type Array = NDArray[np.float64]
 
-_DEPTH = 7  # doublings of a trajectory; most draws take three, and a density that needs more is reported, not waited for
+_DEPTH = 7  # doublings of a trajectory: most draws take three; what needs more is reported, not waited for
 
 
 @dataclass(frozen=True)
@@ -128,19 +128,30 @@ class Engine:
             trace = nutpie.sample(
                 compiled, draws=draws, tune=tune, chains=chains, cores=1, seed=seed, progress_bar=False,
                 adaptation="low_rank", target_accept=target_accept, maxdepth=_DEPTH,
+                return_raw_trace=True,
             )  # fmt: skip
         except (KeyboardInterrupt, SystemExit):
             raise
         except BaseException as error:  # the sampler's own panics are not Exceptions
-            raise SamplingError(f"the sampler stopped: {error}") from error
-        stats = trace["sample_stats"]
-        steps = int(stats["n_steps"].sum()) + int(trace["warmup_sample_stats"]["n_steps"].sum())
+            said = " ".join(str(error).split("Stack backtrace")[0].split())
+            raise SamplingError(f"the sampler stopped: {said}") from error
+        chosen = [_kept(*batches) for batches in zip(*trace.get_arrow_trace(), strict=True)]
         return NutsRun(
-            points=np.asarray(trace["posterior"]["coordinates"].values, dtype=float),
-            diverging=np.asarray(stats["diverging"].values, dtype=bool),
-            gradients=steps,
+            points=np.array([points for points, _, _ in chosen]),
+            diverging=np.array([diverging for _, diverging, _ in chosen]),
+            gradients=sum(steps for _, _, steps in chosen),
             seconds=time.perf_counter() - begun,
         )
+
+
+def _kept(draws: Any, stats: Any) -> tuple[Array, NDArray[np.bool_], int]:
+    """Coordinates and divergences after the warm-up, and all gradients, from one chain's Arrow tables."""
+    import pyarrow
+
+    kept = ~stats.column("tuning").to_numpy()
+    points = pyarrow.array(draws.column("coordinates")).flatten().to_numpy(False).reshape(kept.size, -1)[kept]
+    diverging = stats.column("diverging").to_numpy()[kept]
+    return points, diverging, int(stats.column("n_steps").to_numpy().sum())
 
 
 @cache

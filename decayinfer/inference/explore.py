@@ -1,6 +1,6 @@
 """Explore one density: NUTS, evidence by importance sampling, and a longer retry when either is poor."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -13,7 +13,7 @@ from decayinfer.inference.pilot import disagreement, pilot
 from decayinfer.inference.problem import Problem
 from decayinfer.inference.settings import FitSettings
 
-__all__ = ["Exploration", "Quality", "Standard", "explore"]
+__all__ = ["Exploration", "Quality", "Standard", "explore", "survey"]
 
 type Array = NDArray[np.float64]
 
@@ -82,6 +82,9 @@ STANDARD = Standard()
 _PROPOSALS = 4000
 _CANDIDATES = 150
 _REFITS = 2
+_SHORT = 250  # draws and warm-up of chains that need only find the density
+_STRETCH = 4  # a retry has this many times the draws
+_LONG = 50  # gradients per draw beyond which the shape of the density is to blame, which no longer run cures
 _FAR = 3.5  # standard deviations between chains and weights that mean a missed mode
 
 
@@ -108,11 +111,46 @@ def explore(
     """
     first, second = seeds.spawn(2)
     tried = _attempt(problem, settings, first, wider, longer=False)
-    if tried.converged:
+    if tried.converged or tried.gradients > _LONG * settings.chains * (settings.draws + settings.tune):
         return tried
     again = _attempt(problem, settings, second, wider, longer=True)
     gradients = tried.gradients + again.gradients
     return Exploration(**(vars(again) | {"gradients": gradients, "retried": True}))
+
+
+def survey(problem: Problem, settings: FitSettings, seeds: np.random.SeedSequence) -> Exploration:
+    """Integrate a density that is wanted for its evidence and for comparison: the prior at this P and Pdot.
+
+    Short chains find it, a mixture fitted to them proposes, and the weights supply the draws; where the weights are
+    not good enough it is explored like any other.
+
+    Parameters
+    ----------
+    problem, settings, seeds
+        As in `explore`.
+
+    Raises
+    ------
+    SamplingError
+        If the sampler cannot start.
+    """
+    first, second = seeds.spawn(2)
+    rng = np.random.default_rng(first)
+    short = replace(settings, draws=min(_SHORT, settings.draws), tune=min(_SHORT, settings.tune))
+    run = _sample(problem, short, rng, longer=False)
+    wider = pilot(problem, rng)
+    draws = run.points.reshape(-1, run.points.shape[-1])
+    quality = _quality(problem, run)
+    for _ in range(1 + _REFITS):
+        weighted = importance_sample(problem, draws, _PROPOSALS, rng, wider=wider)
+        if _sound(weighted, 2.0 * STANDARD.ess):
+            break
+        draws = weighted.resample(_PROPOSALS // 2, rng)
+    else:
+        return explore(problem, settings, second)
+    if not _agree(problem, run.points.reshape(-1, run.points.shape[-1]), weighted, quality):
+        return explore(problem, settings, second)
+    return _topped_up(problem, settings, run, weighted, rng)
 
 
 def _attempt(
@@ -123,17 +161,9 @@ def _attempt(
     *,
     longer: bool,
 ) -> Exploration:
-    stretch = 4 if longer else 1
+    stretch = _STRETCH if longer else 1
     rng = np.random.default_rng(seeds)
-    run = engine().sample(
-        problem,
-        lambda seed: _start(problem, np.random.default_rng(seed)),
-        draws=stretch * settings.draws,
-        tune=(2 if longer else 1) * settings.tune,
-        chains=settings.chains,
-        seed=int(rng.integers(2**31)),
-        target_accept=0.95 if longer else 0.8,
-    )
+    run = _sample(problem, settings, rng, longer=longer)
     flat = run.points.reshape(-1, run.points.shape[-1])
     wider = pilot(problem, rng) if wider is None else wider
     weighted = importance_sample(problem, flat, stretch * _PROPOSALS, rng, wider=wider)
@@ -153,6 +183,18 @@ def _attempt(
     if longer and converged:
         points, diverging = run.points[:, stretch - 1 :: stretch], run.diverging[:, stretch - 1 :: stretch]
     return Exploration(points, diverging, quality, weighted, run.gradients, converged)
+
+
+def _sample(problem: Problem, settings: FitSettings, rng: np.random.Generator, *, longer: bool) -> NutsRun:
+    return engine().sample(
+        problem,
+        lambda seed: _start(problem, np.random.default_rng(seed)),
+        draws=(_STRETCH if longer else 1) * settings.draws,
+        tune=(2 if longer else 1) * settings.tune,
+        chains=settings.chains,
+        seed=int(rng.integers(2**31)),
+        target_accept=0.95 if longer else 0.8,
+    )
 
 
 def _sound(weighted: Weighted, least: float) -> bool:

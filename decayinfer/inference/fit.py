@@ -13,7 +13,7 @@ from decayinfer.cooling.registry import choose_scenarios, load_scenario
 from decayinfer.errors import SamplingError
 from decayinfer.inference.coordinates import ln_index_excess
 from decayinfer.inference.density import evaluate
-from decayinfer.inference.explore import Exploration, explore
+from decayinfer.inference.explore import Exploration, explore, survey
 from decayinfer.inference.importance import rewarp
 from decayinfer.inference.measurement import total_error
 from decayinfer.inference.outcome import ChannelFit, ObjectFit, Status
@@ -110,7 +110,7 @@ def _fit(
     settings: FitSettings,
 ) -> ChannelFit:
     without, within = seeds.spawn(2)
-    prior = explore(problem.without_index(), settings, without)
+    prior = survey(problem.without_index(), settings, without)
     attributes = {
         "object": pulsar.name, "scenario": blank.scenario, "channel": channel.name,
         "seed": settings.seed, "settings": json.dumps(settings.as_dict()),

@@ -29,7 +29,7 @@ __all__ = ["PriorDraws", "Today", "draw_prior", "evolve"]
 
 type Array = NDArray[np.float64]
 
-_QUADRATURE = quadrature(96, 9.0)  # enough for old stars under the sharpest freeze-out
+_QUADRATURE = quadrature(160, 9.0)  # 1e-5 for stars of 10 Myr under the sharpest freeze-out
 _FROM_BIRTH = _QUADRATURE.weights - _QUADRATURE.to_now
 _AGE_EDGE = 8.0
 
