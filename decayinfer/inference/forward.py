@@ -141,7 +141,7 @@ def _draw_age(n: int, priors: Priors, rng: np.random.Generator) -> Array:
     """Uniform up to the largest age, with the taper that the density has there."""
     accepted = np.empty(0)
     while accepted.size < n:
-        age = priors.max_age * 2.5 * rng.random(2 * n + 10)
+        age = priors.max_age * 5.0 * rng.random(6 * n + 10)
         keep = rng.random(age.size) < 1.0 / (1.0 + (age / priors.max_age) ** _AGE_EDGE)
         accepted = np.concatenate([accepted, age[keep]])
     return accepted[:n]
