@@ -143,14 +143,14 @@ def survey(problem: Problem, settings: FitSettings, seeds: np.random.SeedSequenc
     quality = _quality(problem, run)
     for _ in range(1 + _REFITS):
         weighted = importance_sample(problem, draws, _PROPOSALS, rng, wider=wider)
-        if _sound(weighted, 2.0 * STANDARD.ess):
+        if sound := _sound(weighted, 2.0 * STANDARD.ess):
             break
         draws = weighted.resample(_PROPOSALS // 2, rng)
-    else:
+    good = sound and _agree(problem, run.points.reshape(-1, run.points.shape[-1]), weighted, quality)
+    if not good and run.gradients <= _LONG * settings.chains * (short.draws + short.tune):
         return explore(problem, settings, second)
-    if not _agree(problem, run.points.reshape(-1, run.points.shape[-1]), weighted, quality):
-        return explore(problem, settings, second)
-    return _topped_up(problem, settings, run, weighted, rng)
+    drawn = _topped_up(problem, settings, run, weighted, rng)
+    return replace(drawn, converged=drawn.converged and good)
 
 
 def _attempt(
