@@ -9,22 +9,22 @@ import numpy as np
 from decayinfer.catalog.pulsar import Pulsar
 from decayinfer.channels.base import Channel
 from decayinfer.channels.registry import channel_names, load_channel
+from decayinfer.channels.rival import Rival
 from decayinfer.cooling.registry import choose_scenarios, load_scenario
 from decayinfer.errors import SamplingError
 from decayinfer.inference.coordinates import ln_index_excess
 from decayinfer.inference.density import evaluate
 from decayinfer.inference.explore import Exploration, explore, survey
 from decayinfer.inference.importance import rewarp
-from decayinfer.inference.measurement import total_error
 from decayinfer.inference.outcome import ChannelFit, ObjectFit, Status
 from decayinfer.inference.problem import Problem, make_problem
+from decayinfer.inference.reach import out_of_reach
 from decayinfer.inference.report import data_tree
+from decayinfer.inference.rival import fit_rival
 from decayinfer.inference.seeds import named_seeds
 from decayinfer.inference.settings import FitSettings
 
 __all__ = ["fit_channel", "fit_object"]
-
-REACH = 5.0  #: total standard deviations beyond which an index is out of a channel's reach
 
 
 def fit_object(
@@ -91,11 +91,13 @@ def fit_channel(pulsar: Pulsar, channel: str, scenario: str, settings: FitSettin
     UnknownNameError
         If a name is in no registry.
     """
-    explanation = load_channel(channel)
-    problem = make_problem(pulsar, explanation, load_scenario(scenario), settings.priors)
+    explanation, star = load_channel(channel), load_scenario(scenario)
     seeds = named_seeds(settings.seed, pulsar.name, scenario, channel)
     blank = ChannelFit(pulsar.name, scenario, channel, Status.FAILED)
     try:
+        if isinstance(explanation, Rival):
+            return fit_rival(pulsar, explanation, star, settings, seeds)
+        problem = make_problem(pulsar, explanation, star, settings.priors)
         return _fit(blank, pulsar, explanation, problem, seeds, settings)
     except SamplingError as error:
         return replace(blank, reason=str(error), flags=("failed",))
@@ -152,28 +154,44 @@ def _fit(
         divergences=int(posterior.diverging.sum()),
         gradients=gradients,
         flags=_flags(posterior, converged),
+        variants=_variants(pulsar, problem, prior, posterior, settings) if channel.decays else {},
         draws=data_tree(problem, channel, prior, posterior, attributes),
     )
 
 
+def _variants(
+    pulsar: Pulsar, problem: Problem, prior: Exploration, posterior: Exploration, settings: FitSettings
+) -> dict[str, Variant]:
+    """Evidence under other readings of n and other prior settings, from the points behind the default."""
+    priors = settings.priors
+    before, after = (_recorded(run.weighted, p) for run, p in ((prior, problem.without_index()), (posterior, problem)))
+    indices = [(w, w.evaluation.physical.index + np.zeros(len(w.points))) for w in (before, after)]
+    found = read_otherwise(*indices, tuple(problem.index), pulsar, priors)
+    for name, factor in PRIOR_SETTINGS.items():
+        other = with_priors(problem, stretched(priors, factor))
+        found[name] = reweighed(
+            before, after, _change(before, problem.without_index(), other.without_index()), _change(after, problem, other)
+        )
+    return found
+
+
+def _change(weighted: Weighted, problem: Problem, other: Problem) -> Array:
+    """Change of the log prior density at weighted points from one problem's priors to another's."""
+    z = list(weighted.points.T)
+    with np.errstate(all="ignore"):
+        new = ln_prior(z, weighted.evaluation.history, other)
+    return np.where(np.isfinite(weighted.ln_weights), new - weighted.evaluation.ln_prior, 0.0)
+
+
 def _out_of_reach(problem: Problem, channel: Channel, prior: Exploration, settings: FitSettings) -> str:
     """Say why a channel cannot give the index, or nothing when it can."""
-    observed, minus, plus, limit = problem.index
     highest = float(ln_index_excess(list(np.moveaxis(prior.points, -1, 0)), problem.without_index()).max())
-    margin = REACH * total_error(minus, plus, settings.priors.scatter_sd)
     low = 3.0  # decay only adds to the index of a constant dipole
     high = low + float(np.exp(highest)) if channel.decays else low
-    what = "limit" if limit else "index"
-    if observed < low - margin:
-        return (
-            f"{what} {observed:g} lies more than {REACH:g} total errors below 3, the least this channel gives"
-        )
-    if observed > high + margin and not limit:
-        return (
-            f"index {observed:g} lies more than {REACH:g} total errors above {high:.4g}, "
-            "the most this channel gives at this period and period derivative"
-        )
-    return ""
+    return out_of_reach(
+        tuple(problem.index), low, high, settings.priors.scatter_sd,
+        where=" at this period and period derivative",
+    )  # fmt: skip
 
 
 def _shortcoming(prior: Exploration, posterior: Exploration) -> str:

@@ -54,6 +54,20 @@ PARAMETERS = (
     Parameter("share_impurity", "", "impurity share of today's decay"),
     Parameter("share_phonon", "", "phonon share of today's decay"),
     Parameter("share_hall", "", "Hall share of today's decay"),
+    Parameter("obliquity", "deg", "obliquity"),
+    Parameter("birth_obliquity", "deg", "birth obliquity"),
+    Parameter("index_excess", "", "contamination of the braking index"),
+    Parameter("acceleration_share", "", "share of Pdot from acceleration"),
+    Parameter("companion_mass", "Msun", "companion mass"),
+    Parameter("orbital_period", "yr", "orbital period"),
+    Parameter("eccentricity", "", "eccentricity"),
+    Parameter("inclination", "deg", "inclination of the orbit"),
+    Parameter("spin_noise_scale", "1 / s3", "scale of the second frequency derivative of spin noise"),
+    Parameter("glitch_nudot_step", "", "relative step of the glitch in the frequency derivative"),
+    Parameter("glitch_interval", "yr", "time between glitches"),
+    Parameter("glitch_time_since", "yr", "time since the glitch"),
+    Parameter("recovery_share", "", "share of the step that recovers exponentially"),
+    Parameter("recovery_time", "yr", "time of the exponential recovery"),
 )
 
 
@@ -79,6 +93,9 @@ class ChannelFit:
         Divergent transitions among the kept draws; gradient evaluations spent.
     flags : tuple of str
         Short flag names, from `decayinfer.results.flags`.
+    variants : mapping of str to (float, float)
+        ln p(n | P, Pdot, channel) and its standard error under other readings of n and other prior settings, by the
+        names in `decayinfer.inference.variants`; the error is nan where too few points carry the weight.
     draws : DataTree or None
         ArviZ groups ``posterior`` and ``prior`` (given P and Pdot but not n), with the variables of
         `PARAMETERS` that the channel defines and the ``coordinates`` vector, plus ``sample_stats``,
@@ -100,6 +117,7 @@ class ChannelFit:
     divergences: int = 0
     gradients: int = 0
     flags: tuple[str, ...] = ()
+    variants: Mapping[str, tuple[float, float]] = field(default_factory=dict)
     draws: DataTree | None = field(default=None, repr=False, compare=False)
 
     def posterior(self, parameter: str) -> NDArray[np.float64]:

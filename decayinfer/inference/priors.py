@@ -12,6 +12,7 @@ from decayinfer.physics.lattice import FREEZE_OUT
 __all__ = ["PRIOR_FIELDS", "Priors"]
 
 _LN10 = float(np.log(10.0))
+_POSITIVE = ("mass_mean", "max_age", "companion_period_min", "companion_period_max")
 
 #: Columns of the array that `Priors.normals` returns.
 PRIOR_FIELDS = (
@@ -53,6 +54,21 @@ class Priors:
         quoted error of n. Zero takes the error as quoted.
     max_age : float
         Stars are born at a constant rate up to this age [yr], the end of the cooling fits.
+    companion_mass_median, companion_mass_sd : float
+        Mass of a wide companion [M_sun], from low-mass stars and white dwarfs to a few M_sun; a choice of ours.
+    companion_period_min, companion_period_max : float
+        Orbital period [yr], log-uniform between (Oepik's law, from memory); the data span takes the place of the
+        shortest where it is known.
+    spin_noise_own_log10_sd : float
+        Error [dex] of an object's own estimate of the scale of nuddot, where none is given.
+    glitch_step_median, glitch_step_sd : float
+        |Delta nudot/nudot| of a glitch: 1e-4 to 1e-1 (Espinoza et al. 2011, MNRAS 414, 1679, from memory).
+    glitch_own_step_sd : float
+        Error of the logarithm of an object's own step.
+    glitch_interval_median, glitch_interval_sd : float
+        Time between glitches [yr]; years (the same survey, from memory).
+    recovery_time_median, recovery_time_sd : float
+        Time of the exponential recovery [yr]; tens to hundreds of days (from memory).
     """
 
     mass_mean: float = 1.28
@@ -74,13 +90,27 @@ class Priors:
     freeze_out: str = "exponential"
     scatter_sd: float = 0.5
     max_age: float = 1e7
+    companion_mass_median: float = 0.6
+    companion_mass_sd: float = 0.9
+    companion_period_min: float = 10.0
+    companion_period_max: float = 1e6
+    spin_noise_own_log10_sd: float = 0.3
+    glitch_step_median: float = 3e-3
+    glitch_step_sd: float = 1.7
+    glitch_own_step_sd: float = 0.1
+    glitch_interval_median: float = 3.0
+    glitch_interval_sd: float = 1.0
+    recovery_time_median: float = 0.2
+    recovery_time_sd: float = 1.2
 
     def __post_init__(self) -> None:
         for name, value in vars(self).items():
-            positive = name.endswith(("_sd", "_median")) or name in ("mass_mean", "max_age")
+            positive = name.endswith(("_sd", "_median")) or name in _POSITIVE
             zero_allowed = name == "scatter_sd"
             if positive and not (value > 0.0 or (zero_allowed and value == 0.0)):
                 raise InputError(f"prior {name} must be positive, got {value}")
+        if not self.companion_period_min < self.companion_period_max:
+            raise InputError("prior companion_period_min must be below companion_period_max")
         if self.freeze_out not in FREEZE_OUT:
             raise InputError(f"freeze_out must be one of {', '.join(FREEZE_OUT)}, got {self.freeze_out!r}")
 

@@ -1,6 +1,7 @@
 """From coordinates to the reported parameters, and into ArviZ's schema."""
 
 import json
+from collections.abc import Sequence
 from importlib.metadata import version
 from typing import Any
 
@@ -16,7 +17,7 @@ from decayinfer.inference.problem import COORDINATES, Problem
 from decayinfer.physics import torque
 from decayinfer.physics.constants import B_UNIT_G, T_UNIT_K
 
-__all__ = ["SCHEMA", "data_tree", "parameters"]
+__all__ = ["SCHEMA", "assemble", "data_tree", "parameters"]
 
 type Array = NDArray[np.float64]
 
@@ -74,8 +75,6 @@ def data_tree(
     Groups ``prior`` (given P and Pdot, without n), and with a posterior also ``posterior``, ``sample_stats``,
     ``log_likelihood``, ``log_prior`` and ``observed_data``.
     """
-    import arviz as az
-
     without = problem.without_index()
     groups: dict[str, dict[str, NDArray[Any]]] = {
         "prior": _variables(prior.points, _evaluated(prior.points, without), without, channel),
@@ -93,8 +92,17 @@ def data_tree(
             "log_likelihood": {"braking_index": likelihood},
             "log_prior": {"all_coordinates": ln_prior},
         }
+    return assemble(groups, COORDINATES, attributes)
+
+
+def assemble(
+    groups: dict[str, dict[str, NDArray[Any]]], coordinates: Sequence[str], attributes: dict[str, Any]
+) -> DataTree:
+    """Put groups of (chains, draws, ...) arrays into ArviZ's schema, with coordinate names and attributes."""
+    import arviz as az
+
     tree: DataTree = az.from_dict(
-        groups, coords={"coordinate": list(COORDINATES)}, dims={"coordinates": ["coordinate"]}
+        groups, coords={"coordinate": list(coordinates)}, dims={"coordinates": ["coordinate"]}
     )
     tree.attrs.update({"schema": SCHEMA, "versions": json.dumps(_versions()), **attributes})
     return tree

@@ -38,7 +38,8 @@ FLAGS = {
             "no-channel",
             "Every fitted channel is unreachable: the index lies beyond five total standard deviations of "
             "anything they predict.",
-            "Look for another cause of the index: spin noise, recovery from a glitch, a wide companion.",
+            "Fit the channels that reach any index, spin-noise and companion; below 3, look for a torque that is no "
+            "dipole's or a field that grows.",
         ),
         Flag(
             "failed",
@@ -66,6 +67,12 @@ FLAGS = {
             "topped-up",
             "The chains mixed poorly but the importance weights were good; draws come from the weights.",
             "Nothing to do; effective sample sizes count the weights.",
+            warns=False,
+        ),
+        Flag(
+            "weighted",
+            "The draws come from importance weights, as for every channel without field decay that needs no chains.",
+            "Nothing to do; effective sample sizes count the weights, and there is no R-hat.",
             warns=False,
         ),
         Flag(

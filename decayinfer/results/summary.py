@@ -228,7 +228,7 @@ def _mixing(fit: ChannelFit) -> _MixingOf:
         return {name: _Mixing() for name in names}
     ess, r_hat = az.ess(posterior[varying], method="bulk"), az.rhat(posterior[varying])
     # Draws resampled from importance weights repeat, and are worth no more than the weights.
-    cap = fit.ess_bulk_min if "topped-up" in fit.flags else np.inf
+    cap = fit.ess_bulk_min if {"topped-up", "weighted"} & set(fit.flags) else np.inf
     return {
         name: _Mixing(min(float(ess[name]), cap), float(r_hat[name])) if name in varying else _Mixing()
         for name in names

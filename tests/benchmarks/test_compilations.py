@@ -20,7 +20,7 @@ def test_compilations(bench, say):
     with install_recorder("numba:compile") as recorder:
         for star in bench.stars:
             for scenario in ("candle", "slow-candle"):
-                for channel in channel_names():
+                for channel in channel_names(rivals=False):
                     fit_channel(star, channel, scenario, QUICK)
                     fits += 1
     compiled = sum(event.is_start for _, event in recorder.buffer)

@@ -19,8 +19,25 @@ NAMES = (
 )
 
 
+RIVALS = ("obliquity-vacuum", "obliquity-plasma", "companion", "spin-noise", "glitch")
+
+
 def test_names_in_the_order_of_the_tables():
-    assert channel_names() == NAMES
+    assert channel_names(rivals=False) == NAMES
+    assert channel_names(rivals=True) == RIVALS
+    assert channel_names() == NAMES + RIVALS
+
+
+@pytest.mark.parametrize("name", RIVALS)
+def test_a_rival_has_no_decay_and_reports_parameters_of_its_own(name):
+    rival = load_channel(name)
+    assert rival.name == name
+    assert rival.title
+    assert not rival.decays
+    assert len(set(rival.parameters)) == len(rival.parameters)
+    assert set(rival.parameters) <= {parameter.name for parameter in PARAMETERS}
+    assert set(rival.own) < set(rival.parameters)
+    assert set(load_channel("constant").parameters) < set(rival.parameters)
 
 
 @pytest.mark.parametrize("name", NAMES)

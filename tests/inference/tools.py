@@ -16,7 +16,7 @@ from decayinfer.inference.problem import make_problem
 from decayinfer.physics.conduction import density_from_phonon_time
 from decayinfer.physics.hall import attractor_switch, hall_time
 
-CHANNELS = channel_names()
+CHANNELS = channel_names(rivals=False)
 DECAYING = CHANNELS[1:]
 SCENARIOS = ("candle", "slow-candle")
 LAWS = ("none", "exponential", "cut")

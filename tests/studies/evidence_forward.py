@@ -199,7 +199,7 @@ def main():
     tools.register_scenarios()
     rows = []
     for scenario in ("candle", "slow-candle"):
-        for channel in channel_names()[1:]:
+        for channel in channel_names(rivals=False)[1:]:
             row = compare(channel, scenario, chosen.draws, chosen.seed)
             rows.append(row)
             print(
