@@ -80,7 +80,9 @@ def plasma_past(cosine: Array, sine_squared: Array, period_ratio: Array) -> Past
     birth = np.sqrt(c2_birth)
     slope = birth / cosine * (2.0 - c2) / (2.0 - c2_birth) * s2_birth / sine_squared
     lost = (c2 - c2_birth) / s2_birth  # 1 - sin^2 a/sin^2 a_0
-    integral = lost * c2 / sine_squared + (lost + np.log1p(-lost))
+    # lost + ln(1 - lost), which cancels near right angles
+    small = -(lost**2) * (0.5 + lost * (1.0 / 3.0 + lost * (0.25 + 0.2 * lost)))
+    integral = lost * c2 / sine_squared + np.where(lost < 1e-3, small, lost + np.log1p(-lost))
     return Past(birth, slope, (1.0 + sine_squared) * sine_squared / c2**2 * integral)
 
 
