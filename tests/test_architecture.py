@@ -13,7 +13,17 @@ PACKAGE = Path(decayinfer.__file__).parent
 ROOT = PACKAGE.parent
 MODULES = sorted(path for path in PACKAGE.rglob("*.py"))
 #: Lower first; nothing imports what stands after it.
-LAYERS = ("catalog", "physics", "cooling", "channels", "inference", "results", "report", "cli")
+LAYERS = (
+    "measurements",
+    "catalog",
+    "physics",
+    "cooling",
+    "channels",
+    "inference",
+    "results",
+    "report",
+    "cli",
+)
 #: Modules at the top level that everything may use.
 COMMON = {"errors"}
 #: What stands beside the command line.
@@ -60,13 +70,16 @@ def layer(module):
 
 @pytest.mark.parametrize("path", MODULES, ids=name_of)
 def test_imports_point_one_way(path):
-    """catalog < physics < cooling < channels < inference < results < report < command line; catalog may use physics."""
+    """measurements < catalog < physics < cooling < channels < inference < results < report < command line.
+
+    The first two may use physics.
+    """
     own = layer(name_of(path))
     if own is None or (path.stem in SHELL and path.parent == PACKAGE):
         return
     assert own in LAYERS or own in COMMON, f"{own} has no place among the layers"
     allowed = COMMON | {own} | (set() if own in COMMON else set(LAYERS[: LAYERS.index(own)]))
-    if own == "catalog":
+    if own in {"measurements", "catalog"}:
         allowed |= {"physics"}
     used = {layer(module) for module in imported(tree_of(path))} - {None}
     used &= {p.stem for p in PACKAGE.iterdir()}  # names such as `__version__` are no modules
