@@ -5,6 +5,7 @@ from collections.abc import Callable
 from dataclasses import replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from decayinfer.catalog.pulsar import Pulsar
 from decayinfer.channels.base import Channel
@@ -12,19 +13,32 @@ from decayinfer.channels.registry import channel_names, load_channel
 from decayinfer.channels.rival import Rival
 from decayinfer.cooling.registry import choose_scenarios, load_scenario
 from decayinfer.errors import SamplingError
-from decayinfer.inference.coordinates import ln_index_excess
-from decayinfer.inference.density import evaluate
+from decayinfer.inference.coordinates import ln_index_excess, ln_prior
+from decayinfer.inference.density import Evaluation, evaluate
 from decayinfer.inference.explore import Exploration, explore, survey
-from decayinfer.inference.importance import rewarp
+from decayinfer.inference.importance import Weighted, rewarp
 from decayinfer.inference.outcome import ChannelFit, ObjectFit, Status
-from decayinfer.inference.problem import Problem, make_problem
+from decayinfer.inference.priors import Priors
+from decayinfer.inference.problem import Problem, make_problem, with_priors
 from decayinfer.inference.reach import out_of_reach
 from decayinfer.inference.report import data_tree
 from decayinfer.inference.rival import fit_rival
 from decayinfer.inference.seeds import named_seeds
 from decayinfer.inference.settings import FitSettings
+from decayinfer.inference.variants import (
+    PRIOR_SETTINGS,
+    READINGS,
+    Variant,
+    ln_reading,
+    read_otherwise,
+    read_with_noise,
+    reweighed,
+    stretched,
+)
 
 __all__ = ["fit_channel", "fit_object"]
+
+type Array = NDArray[np.float64]
 
 
 def fit_object(
@@ -124,6 +138,7 @@ def _fit(
             blank, status=Status.UNREACHABLE, reason=reason, ln_evidence=-np.inf, ln_evidence_err=0.0,
             ln_evidence_joint=-np.inf, ln_evidence_joint_err=0.0, gradients=prior.gradients,
             flags=("unreachable",), draws=draws,
+            variants=_noise_alone(pulsar, problem, prior.weighted, settings.priors),
         )  # fmt: skip
     if channel.decays:
         wider = rewarp(prior.points.reshape(-1, prior.points.shape[-1]), problem.without_index(), problem)
@@ -132,6 +147,7 @@ def _fit(
         conditional = joint - prior.weighted.ln_evidence
         conditional_err = float(np.hypot(joint_err, prior.weighted.ln_evidence_err))
         gradients = prior.gradients + posterior.gradients
+        variants = _variants(pulsar, problem, prior.weighted, posterior.weighted, settings.priors)
     else:
         # n = 3 whatever the coordinates: the likelihood is one number and the posterior is the prior
         posterior = prior
@@ -139,6 +155,7 @@ def _fit(
         conditional_err, joint_err = 0.0, prior.weighted.ln_evidence_err
         joint = conditional + prior.weighted.ln_evidence
         gradients = prior.gradients
+        variants = _constant_variants(problem, pulsar, settings.priors)
     converged = prior.converged and posterior.converged
     return replace(
         blank,
@@ -154,33 +171,54 @@ def _fit(
         divergences=int(posterior.diverging.sum()),
         gradients=gradients,
         flags=_flags(posterior, converged),
-        variants=_variants(pulsar, problem, prior, posterior, settings) if channel.decays else {},
+        variants=variants,
         draws=data_tree(problem, channel, prior, posterior, attributes),
     )
 
 
 def _variants(
-    pulsar: Pulsar, problem: Problem, prior: Exploration, posterior: Exploration, settings: FitSettings
+    pulsar: Pulsar, problem: Problem, prior: Weighted, posterior: Weighted, priors: Priors
 ) -> dict[str, Variant]:
     """Evidence under other readings of n and other prior settings, from the points behind the default."""
-    priors = settings.priors
-    before, after = (_recorded(run.weighted, p) for run, p in ((prior, problem.without_index()), (posterior, problem)))
-    indices = [(w, w.evaluation.physical.index + np.zeros(len(w.points))) for w in (before, after)]
-    found = read_otherwise(*indices, tuple(problem.index), pulsar, priors)
+    without = problem.without_index()
+    before, after = _evaluated(prior, without), _evaluated(posterior, problem)
+    found = read_otherwise(
+        (prior, _indices(before)), (posterior, _indices(after)), tuple(problem.index), pulsar, priors
+    )
     for name, factor in PRIOR_SETTINGS.items():
         other = with_priors(problem, stretched(priors, factor))
-        found[name] = reweighed(
-            before, after, _change(before, problem.without_index(), other.without_index()), _change(after, problem, other)
-        )
+        changes = _change(prior, before, other.without_index()), _change(posterior, after, other)
+        found[name] = reweighed(prior, posterior, *changes)
     return found
 
 
-def _change(weighted: Weighted, problem: Problem, other: Problem) -> Array:
-    """Change of the log prior density at weighted points from one problem's priors to another's."""
-    z = list(weighted.points.T)
+def _noise_alone(pulsar: Pulsar, problem: Problem, prior: Weighted, priors: Priors) -> dict[str, Variant]:
+    """The variant that an index out of reach has: with spin noise, it may be noise on top of what the channel gives."""
+    indices = _indices(_evaluated(prior, problem.without_index()))
+    return {"with-noise": read_with_noise((prior, indices), tuple(problem.index), pulsar, priors)}
+
+
+def _evaluated(weighted: Weighted, problem: Problem) -> Evaluation:
+    return weighted.evaluation or evaluate(weighted.points, problem)
+
+
+def _indices(evaluation: Evaluation) -> Array:
+    return evaluation.physical.index + np.zeros_like(evaluation.ln_prior)
+
+
+def _change(weighted: Weighted, evaluation: Evaluation, other: Problem) -> Array:
+    """Change of the log prior density at weighted points when the priors become those of another problem."""
     with np.errstate(all="ignore"):
-        new = ln_prior(z, weighted.evaluation.history, other)
-    return np.where(np.isfinite(weighted.ln_weights), new - weighted.evaluation.ln_prior, 0.0)
+        change: Array = ln_prior(list(weighted.points.T), evaluation.history, other) - evaluation.ln_prior
+    return np.where(np.isfinite(evaluation.ln_prior), change, 0.0)
+
+
+def _constant_variants(problem: Problem, pulsar: Pulsar, priors: Priors) -> dict[str, Variant]:
+    """The same where n = 3 whatever the coordinates: no prior moves the conditional evidence."""
+    three, measured = np.array([3.0]), tuple(problem.index)
+    values = {r: float(ln_reading(r, three, measured, pulsar, priors)[0]) for r in READINGS}
+    settings = dict.fromkeys(PRIOR_SETTINGS, values["scattered"])
+    return {name: (value, 0.0) for name, value in (values | settings).items() if name != "scattered"}
 
 
 def _out_of_reach(problem: Problem, channel: Channel, prior: Exploration, settings: FitSettings) -> str:

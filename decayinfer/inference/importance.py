@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from decayinfer.inference.coordinates import ln_index_excess
-from decayinfer.inference.density import evaluate
+from decayinfer.inference.density import Evaluation, evaluate
 from decayinfer.inference.diagnostics import pareto_k
 from decayinfer.inference.problem import Problem
 from decayinfer.inference.proposal import fit_mixture
@@ -30,10 +30,13 @@ class Weighted:
         Proposed coordinates.
     ln_weights : (n,) array
         Log of density over proposal.
+    evaluation : Evaluation or None
+        Density terms and physical parameters of the points, where they were kept.
     """
 
     points: Array
     ln_weights: Array
+    evaluation: Evaluation | None = None
 
     @property
     def weights(self) -> Array:
@@ -110,7 +113,8 @@ def importance_sample(
     idle = problem.active.size - active.size
     ln_proposal = ln_proposal - 0.5 * np.sum(points**2, axis=1) - 0.5 * idle * _LN_2PI
     points[:, active] = proposed
-    return Weighted(points, evaluate(points, problem).ln_density(problem) - ln_proposal)
+    evaluation = evaluate(points, problem)
+    return Weighted(points, evaluation.ln_density(problem) - ln_proposal, evaluation)
 
 
 def rewarp(points: Array, source: Problem, target: Problem) -> Array:

@@ -10,7 +10,7 @@ from decayinfer.channels.base import Channel
 from decayinfer.cooling.scenario import Scenario
 from decayinfer.inference.priors import Priors
 
-__all__ = ["COORDINATES", "Problem", "make_problem"]
+__all__ = ["COORDINATES", "Problem", "make_problem", "with_priors"]
 
 #: The sampled coordinates; one that a channel does not use keeps a standard normal prior.
 COORDINATES = (
@@ -116,9 +116,18 @@ def make_problem(pulsar: Pulsar, channel: Channel, scenario: Scenario, priors: P
         normals=priors.normals(),
         warp=warp,
         shear=_hall_alone(channel.flags) if free else np.array(0.0),
-        limits=np.array(
-            [priors.mass_mean, priors.mass_sd, priors.mass_ln_norm, np.log(priors.max_age), priors.scatter_sd]
-        ),
+        limits=_limits(priors),
+    )
+
+
+def with_priors(problem: Problem, priors: Priors) -> Problem:
+    """Return the same problem, in the same coordinates, under other priors of the physical parameters."""
+    return problem._replace(normals=priors.normals(), limits=_limits(priors))
+
+
+def _limits(priors: Priors) -> NDArray[np.float64]:
+    return np.array(
+        [priors.mass_mean, priors.mass_sd, priors.mass_ln_norm, np.log(priors.max_age), priors.scatter_sd]
     )
 
 

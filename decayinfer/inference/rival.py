@@ -30,6 +30,7 @@ from decayinfer.inference.rival_density import (
     pinnable,
     rival_parameters,
 )
+from decayinfer.inference.rival_variants import rival_variants
 from decayinfer.inference.settings import FitSettings
 
 __all__ = ["fit_rival", "integrate_posterior", "integrate_prior", "make_rival_problem"]
@@ -90,6 +91,7 @@ def fit_rival(
         return ChannelFit(
             *labels, Status.UNREACHABLE, reason=reason, ln_evidence=-np.inf, ln_evidence_err=0.0,
             ln_evidence_joint=-np.inf, ln_evidence_joint_err=0.0, flags=("unreachable",), draws=tree,
+            variants=rival_variants(problem, prior, None, rng, _integrate),
         )  # fmt: skip
     posterior = integrate_posterior(problem, prior, rng)
     good = sound(prior) and sound(posterior)
@@ -111,7 +113,13 @@ def fit_rival(
             *(("evidence-noisy",) if err > _NOISY else ()),
         ),
         draws=assemble(_groups(problem, settings, rng, prior, posterior), _names(rival), attributes),
+        variants=rival_variants(problem, prior, posterior, rng, _integrate),
     )
+
+
+def _integrate(problem: RivalProblem, rng: np.random.Generator) -> tuple[Weighted, Weighted]:
+    prior = integrate_prior(problem, rng)
+    return prior, integrate_posterior(problem, prior, rng)
 
 
 def integrate_prior(problem: RivalProblem, rng: np.random.Generator) -> Weighted:
@@ -257,7 +265,8 @@ def _groups(
 
 
 def _variables(e: Evaluated, problem: RivalProblem, shape: tuple[int, int]) -> dict[str, NDArray[np.generic]]:
-    own = {name: values.reshape(shape) for name, values in rival_parameters(e, problem).items()}
+    found = rival_parameters(e.spin, e.response, problem.rival, problem.scenario)
+    own = {name: values.reshape(shape) for name, values in found.items()}
     return {"coordinates": e.coordinates.reshape(*shape, -1), **own}
 
 

@@ -127,21 +127,21 @@ def pinnable(e: Evaluated, problem: RivalProblem, what: Pinned) -> NDArray[np.bo
     return reached
 
 
-def rival_parameters(e: Evaluated, problem: RivalProblem) -> dict[str, Array]:
+def rival_parameters(spin: Spin, response: Response, rival: Rival, scenario: Scenario) -> dict[str, Array]:
     """Return the parameters that a rival reports, in the units of `decayinfer.inference.outcome.PARAMETERS`."""
-    ln_field, ln_age = _field_and_age(e.spin, e.response, problem)
+    ln_field, ln_age = _field_and_age(spin, response, scenario)
     field = np.exp(ln_field) * B_UNIT_G
     every = {
-        "mass": e.spin.mass,
+        "mass": spin.mass,
         "age": np.exp(ln_age),
         "birth_field": field,
-        "birth_period": e.spin.period_ratio * e.spin.period,
+        "birth_period": spin.period_ratio * spin.period,
         "field": field,
-        "braking_index": e.response.braking_index,
-        "crust_temperature": np.exp(problem.scenario.ln_temperature(ln_age, e.spin.mass)) * T_UNIT_K,
-        **e.response.parameters,
+        "braking_index": response.braking_index,
+        "crust_temperature": np.exp(scenario.ln_temperature(ln_age, spin.mass)) * T_UNIT_K,
+        **response.parameters,
     }
-    return {name: every[name] for name in problem.rival.parameters}
+    return {name: every[name] for name in rival.parameters}
 
 
 def _evaluate(points: Array, problem: RivalProblem) -> Evaluated:
@@ -158,7 +158,7 @@ def _evaluate(points: Array, problem: RivalProblem) -> Evaluated:
         own[0], ln_slope = _pin(value, own, spin, problem.rival, problem.pinned)
         ln_pinned = _finite(ln_slope + ln_stretch)
     response = problem.rival.respond(own, spin)
-    ln_field, ln_age = _field_and_age(spin, response, problem)
+    ln_field, ln_age = _field_and_age(spin, response, problem.scenario)
     ln_ratio = np.log(response.derivative_ratio)  # nan, hence no density, where not positive
     ln_tau = np.log(star.characteristic_age) - ln_ratio
     mean, sd = priors.normals()[:, 4]
@@ -184,11 +184,11 @@ def _period_ratio(u: Array, period: float, priors: Priors) -> tuple[Array, float
     return np.exp(ln_birth - np.log(period)), float(log_ndtr(edge))
 
 
-def _field_and_age(spin: Spin, response: Response, problem: RivalProblem) -> tuple[Array, Array]:
+def _field_and_age(spin: Spin, response: Response, scenario: Scenario) -> tuple[Array, Array]:
     """Logs of the field [1e12 G] and of the age [yr]."""
     constant = torque.spin_down_constant(
-        radius_km=problem.scenario.radius_km(spin.mass),
-        inertia_45=problem.scenario.inertia_45(spin.mass),
+        radius_km=scenario.radius_km(spin.mass),
+        inertia_45=scenario.inertia_45(spin.mass),
         torque=response.torque,
     )
     with np.errstate(all="ignore"):

@@ -33,7 +33,7 @@ __all__ = [
 HEADER = "decayinfer"
 
 #: Version of the file layout.
-LAYOUT = 1
+LAYOUT = 2
 
 _LONGEST_NAME = 100
 
@@ -176,6 +176,7 @@ def _channel_fit(header: dict[str, Any], draws: "DataTree") -> "ChannelFit":
 
     values: dict[str, Any] = {f.name: header[f.name] for f in fields(ChannelFit) if f.name != "draws"}
     values |= {"status": Status(header["status"]), "flags": tuple(header["flags"])}
+    values["variants"] = {name: tuple(pair) for name, pair in header["variants"].items()}
     return ChannelFit(**values, draws=draws if draws.children else None)
 
 
