@@ -36,12 +36,13 @@ from decayinfer.cooling.registry import load_scenario
 from decayinfer.cooling.stars import stars_of_mass
 from decayinfer.inference.coordinates import history_inputs, ln_index_excess, ln_prior, physical
 from decayinfer.inference.density import Evaluation, evaluate
-from decayinfer.inference.fit import fit_channel
+from decayinfer.inference.explore import explore
 from decayinfer.inference.measurement import ln_index_likelihood
 from decayinfer.inference.nodes import quadrature
 from decayinfer.inference.priors import Priors
 from decayinfer.inference.problem import make_problem
 from decayinfer.inference.report import parameters
+from decayinfer.inference.seeds import named_seeds
 from decayinfer.inference.settings import FitSettings
 from decayinfer.physics.constants import T_UNIT_K
 
@@ -248,10 +249,11 @@ def _quantiles(x, weights):
 
 def compare(star, scenario, channel, sides, *, settings=None):
     """One row for each side, a mapping of names to stand-ins for the fit: how far every reported parameter moves."""
-    fit = fit_channel(star, channel, scenario, settings or FitSettings())
     numbers = make_problem(star, load_channel(channel), load_scenario(scenario), Priors())
-    points = fit.draws["posterior"]["coordinates"].values.reshape(-1, numbers.active.size)
-    run = {"object": star.name, "scenario": scenario, "channel": channel, "status": str(fit.status)}
+    settings = settings or FitSettings()
+    found = explore(numbers, settings, named_seeds(settings.seed, star.name, scenario, channel))
+    points = found.points.reshape(-1, numbers.active.size)
+    run = {"object": star.name, "scenario": scenario, "channel": channel, "converged": found.converged}
     return [
         {"against": against} | run | moves(*reweigh(points, numbers, load_channel(channel), side, FINE))
         for against, side in sides.items()
