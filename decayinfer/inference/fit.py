@@ -203,7 +203,8 @@ def _evaluated(weighted: Weighted, problem: Problem) -> Evaluation:
 
 
 def _indices(evaluation: Evaluation) -> Array:
-    return evaluation.physical.index + np.zeros_like(evaluation.ln_prior)
+    indices: Array = evaluation.physical.index + np.zeros_like(evaluation.ln_prior)
+    return indices
 
 
 def _change(weighted: Weighted, evaluation: Evaluation, other: Problem) -> Array:
