@@ -96,16 +96,19 @@ def _options(
 @app.command()
 @_guarded
 def check(table: Annotated[str, typer.Argument(metavar="TABLE")], column: Columns = None) -> None:
-    """Show what a table says: tau_c, field, index, the decay time it implies; and every problem.
+    """Show what a table says: tau_c, field, index, the decay time it implies, what else is known; and every problem.
 
     Exit code 1 when a row had to be set aside.
     """
     from decayinfer.catalog import read_table
+    from decayinfer.catalog.further import FURTHER_HEADER, further_listing
     from decayinfer.results.listing import CHECK_HEADER, check_listing
 
     catalog = read_table(table, columns=_mapping(column))
     if catalog.pulsars:
         print_table(CHECK_HEADER, check_listing(catalog))
+    if further := further_listing(catalog):
+        print_table(FURTHER_HEADER, further)
     print_problems(stdout(), catalog.problems)
     aside = catalog.rows_set_aside
     typer.echo(f"{len(catalog)} objects can be fitted, {len(aside)} rows set aside")

@@ -15,7 +15,7 @@ from decayinfer.errors import InputError
 if TYPE_CHECKING:
     from astropy.table import Table
 
-__all__ = ["Cells", "names_of", "read_cells"]
+__all__ = ["Cells", "names_of", "read_cells", "read_text"]
 
 _BLANK = {"", "nan", "na", "n/a", "none", "null", "-", "--", "...", "*", "<na>"}
 _NUMERIC = (
@@ -102,7 +102,7 @@ def _convert(source: str, table: "Table", name: str, mapped: Mapping[str, str]) 
     raw, absent, bad = _numbers(column)
     unit = column.unit
     partner = mapped.get(value_of(name))
-    if unit is None and partner is not None:  # an error without a unit has that of its value
+    if unit is None and partner is not None:  # an error or a limit without a unit has that of its value
         unit = getattr(table[partner], "unit", None)
     values = _to_internal(f"{source}, column {mapped[name]}", raw, unit, COLUMNS[name])
     bad |= ~absent & ~np.isfinite(values)
@@ -188,6 +188,21 @@ def _text(cell: Any) -> str:
         return str(cell)
     except ValueError:  # Python writes no integer of thousands of digits
         return f"a {type(cell).__name__} too long to write"
+
+
+def read_text(source: str, table: "Table", column: str) -> Cells:
+    """Return a column of text, `raw` being the list of its cells, empty where there is nothing.
+
+    Raises
+    ------
+    InputError
+        When the column holds arrays.
+    """
+    raw = ["" if text.casefold() in _BLANK else text for text in names_of(source, table, column)]
+    never = np.zeros(len(raw), bool)
+    return Cells(
+        column, np.full(len(raw), np.nan), np.array([not text for text in raw], bool), never, raw, ""
+    )
 
 
 def names_of(source: str, table: "Table", column: str) -> list[str]:

@@ -4,8 +4,18 @@ from collections.abc import Collection, Iterable, Mapping, Sequence
 from difflib import get_close_matches
 
 from decayinfer.errors import InputError
+from decayinfer.measurements import MEASUREMENTS
 
-__all__ = ["COLUMNS", "INDEX_SOURCES", "SPIN_PAIRS", "check_required", "map_columns", "nearest", "value_of"]
+__all__ = [
+    "COLUMNS",
+    "INDEX_SOURCES",
+    "KNOWN",
+    "SPIN_PAIRS",
+    "check_required",
+    "map_columns",
+    "nearest",
+    "value_of",
+]
 
 _QUANTITIES = {
     "period": "s",
@@ -14,8 +24,6 @@ _QUANTITIES = {
     "frequency_derivative": "Hz/s",
     "frequency_second_derivative": "Hz/s^2",
     "braking_index": "",
-    "age": "yr",
-    "surface_temperature": "K",
 }
 
 #: Columns of numbers, each with the unit it has when the table states none.
@@ -25,7 +33,16 @@ COLUMNS = {
     "braking_index_err_minus": "",
     "braking_index_err_plus": "",
     "braking_index_limit": "",
+    **{name: unit for kind in MEASUREMENTS.values() for name, unit in kind.columns().items()},
+    "data_span": "yr",
+    "glitch_nudot_step": "",
+    "glitch_time_since": "yr",
+    "spin_noise_log10_scale": "",
+    "spin_noise_log10_scale_err": "",
 }
+
+#: Every column, those of text included.
+KNOWN = ("name", *COLUMNS, "index_kind")
 
 #: Either pair gives the spin.
 SPIN_PAIRS = (("period", "period_derivative"), ("frequency", "frequency_derivative"))
@@ -40,8 +57,8 @@ INDEX_SOURCES = (
 
 
 def value_of(name: str) -> str:
-    """Return the column that an error column belongs to, or the column itself."""
-    return name.partition("_err")[0]
+    """Return the column that a column of errors or limits belongs to, or the column itself."""
+    return name.partition("_err")[0].removesuffix("_min").removesuffix("_max")
 
 
 def nearest(name: str, among: Iterable[str], cutoff: float = 0.6) -> str | None:
@@ -73,14 +90,13 @@ def map_columns(source: str, found: Sequence[str], columns: Mapping[str, str] | 
     InputError
         When a known name is unknown or the table lacks its counterpart.
     """
-    known = ["name", *COLUMNS]
-    mapped = {name: name for name in known if name in found}
+    mapped = {name: name for name in KNOWN if name in found}
     for ours, theirs in (columns or {}).items():
-        if ours not in known:
-            hint = nearest(str(ours), known)
+        if ours not in KNOWN:
+            hint = nearest(str(ours), KNOWN)
             raise InputError(
                 f"{source}: column mapping {ours}={theirs}: there is no quantity {ours!r}"
-                + (f", did you mean {hint!r}?" if hint else f"; choose from: {', '.join(known)}")
+                + (f", did you mean {hint!r}?" if hint else f"; choose from: {', '.join(KNOWN)}")
             )
         if theirs not in found:
             raise InputError(

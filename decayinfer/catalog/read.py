@@ -7,13 +7,16 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from decayinfer.catalog.catalog import Catalog
-from decayinfer.catalog.cells import Cells, names_of, read_cells
-from decayinfer.catalog.columns import COLUMNS, check_required, map_columns, nearest
+from decayinfer.catalog.cells import Cells, names_of, read_cells, read_text
+from decayinfer.catalog.columns import COLUMNS, KNOWN, check_required, map_columns, nearest
+from decayinfer.catalog.facts import Facts, read_facts, read_index_kind
+from decayinfer.catalog.further import read_measurements
 from decayinfer.catalog.index import Index, read_index
 from decayinfer.catalog.ledger import Ledger
 from decayinfer.catalog.loading import load
 from decayinfer.catalog.pulsar import Pulsar
 from decayinfer.catalog.spin import Spin, read_spin
+from decayinfer.measurements import Measurement
 
 if TYPE_CHECKING:
     from astropy.table import Table
@@ -30,8 +33,12 @@ def read_table(
     Every row needs a name; period and period_derivative, or frequency and frequency_derivative; and
     braking_index with braking_index_err (or braking_index_err_minus and braking_index_err_plus), or
     frequency_second_derivative with its _err, or braking_index_limit, an upper limit. The spin columns may
-    have an _err too. Units are those the table states; without, they are s, Hz, Hz/s, Hz/s^2, yr and K, and
-    an error has the unit of its value. A row that breaks a rule is set aside and reported, the others go on.
+    have an _err too. Of what else may be known, age, surface_temperature, thermal_luminosity and obliquity come
+    with _err (or _err_minus and _err_plus), or as limits _min and _max; data_span, glitch_nudot_step,
+    glitch_time_since, spin_noise_log10_scale (with _err) and index_kind are facts of the timing. Units are those the
+    table states; without, they are s, Hz, Hz/s, Hz/s^2, yr, K, erg/s and deg, and an error or a limit has the unit
+    of its value. A row that breaks a rule is set aside and reported, the others go on; where only something
+    beside spin and index is wrong, that alone is left out, and reported too.
 
     Parameters
     ----------
@@ -67,7 +74,9 @@ def read_table(
     label, table, remarks = load(source, mapping.get("name", "name"))
     mapped = map_columns(label, table.colnames, mapping)
     unused = check_required(label, table.colnames, mapped)
-    cells = read_cells(label, table, {name: mapped[name] for name in mapped if name not in unused})
+    cells = read_cells(
+        label, table, {name: mapped[name] for name in mapped if name in COLUMNS and name not in unused}
+    )
     ledger = Ledger(label, names_of(label, table, mapped["name"]))
     for remark in remarks:
         ledger.remark(
@@ -76,9 +85,13 @@ def read_table(
     _remark_columns(table.colnames, mapped, unused, ledger)
     period, frequency = read_spin(cells, ledger)
     index = read_index(cells, frequency, ledger)
+    measurements, facts = read_measurements(cells, ledger), read_facts(cells, ledger)
+    kinds = [""] * len(table)
+    if "index_kind" in mapped:
+        kinds = read_index_kind(read_text(label, table, mapped["index_kind"]), ledger)
     _check_names(mapped["name"], ledger)
     kept = np.flatnonzero(~ledger.aside).tolist()
-    pulsars = tuple(_pulsar(row, period, index, ledger) for row in kept)
+    pulsars = tuple(_pulsar(row, period, index, measurements[row], facts, kinds[row], ledger) for row in kept)
     return Catalog(label, pulsars, ledger.problems(), table, tuple(row + 1 for row in kept), mapped)
 
 
@@ -96,7 +109,7 @@ def _remark_columns(found: list[str], mapped: Mapping[str, str], unused: list[st
         ledger.remark(
             name, "should not stand beside the column mapped to it", f"{mapped[name]} mapped", "drop one"
         )
-    free = [name for name in ("name", *COLUMNS) if name not in mapped]
+    free = [name for name in KNOWN if name not in mapped]
     for theirs in (name for name in found if name not in {*mapped.values(), *replaced}):
         near = nearest(theirs, free, cutoff=0.8)
         if near:
@@ -122,7 +135,15 @@ def _check_names(column: str, ledger: Ledger) -> None:
     ledger.refuse(again & ~empty, cells, "must be unique", "rename or remove one of the rows")
 
 
-def _pulsar(row: int, period: Spin, index: Index, ledger: Ledger) -> Pulsar:
+def _pulsar(
+    row: int,
+    period: Spin,
+    index: Index,
+    measurements: tuple[Measurement, ...],
+    facts: Facts,
+    index_kind: str,
+    ledger: Ledger,
+) -> Pulsar:
     return Pulsar(
         name=ledger.names[row],
         period=float(period.value[row]),
@@ -133,5 +154,8 @@ def _pulsar(row: int, period: Spin, index: Index, ledger: Ledger) -> Pulsar:
         braking_index_err_minus=float(index.err_minus[row]),
         braking_index_err_plus=float(index.err_plus[row]),
         braking_index_limit=float(index.limit[row]),
+        measurements=measurements,
+        index_kind=index_kind,
+        **facts.of(row),
         flags=ledger.flags(row),
     )
