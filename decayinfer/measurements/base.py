@@ -188,19 +188,21 @@ class Measurement(ABC):
         return [below, np.where(x > self.value, 1.0 - beyond, short)]
 
     def _numbers(self) -> str:
-        if not np.isfinite(self.value):
-            if not np.isfinite(self.lower):
-                return f"< {self.upper:.4g}"
-            return (
-                f"> {self.lower:.4g}"
-                if not np.isfinite(self.upper)
-                else f"{self.lower:.4g} to {self.upper:.4g}"
-            )
-        if self.err_minus == self.err_plus:
-            return f"{self.value:.4g} ± {self.err_plus:.2g}"
-        return f"{self.value:.4g} +{self.err_plus:.2g} -{self.err_minus:.2g}"
+        value, lower, upper = (_digits(x, 4) for x in (self.value, self.lower, self.upper))
+        minus, plus = _digits(self.err_minus, 2), _digits(self.err_plus, 2)
+        if np.isfinite(self.value):
+            return f"{value} ± {plus}" if self.err_minus == self.err_plus else f"{value} +{plus} -{minus}"
+        if np.isfinite(self.lower):
+            return f"{lower} to {upper}" if np.isfinite(self.upper) else f"> {lower}"
+        return f"< {upper}"
 
     def _refuse(self, rule: str) -> None:
         raise InputError(
             f"{self.name}: {rule}, got {self._numbers()} [{self.unit}]; remedy: correct the measurement"
         )
+
+
+def _digits(value: float, digits: int) -> str:
+    """Return significant digits, without an exponent where that stays short."""
+    text = f"{value:.{digits}g}"
+    return f"{value:.0f}" if "e+" in text and abs(value) < 1e7 else text
