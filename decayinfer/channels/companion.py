@@ -22,6 +22,7 @@ __all__ = ["CHANNELS"]
 
 type Array = NDArray[np.float64]
 
+_HIGHEST = 1.0 - 1e-12  # eccentricity; a parabola has no period
 _LN_SQRT_2PI = 0.5 * float(np.log(2.0 * np.pi))
 
 
@@ -36,7 +37,7 @@ def _ln_range(orbit: Orbit, spin: Spin) -> tuple[Array, Array]:
 def _orbit(coordinates: Array) -> tuple[Orbit, Array]:
     """Orbit up to half a turn, and ln of prior over normal density: the moment is uniform in time, not in E."""
     _, _, eccentric, moment, argument, cosine = coordinates
-    e = np.sqrt(ndtr(eccentric))
+    e = np.minimum(np.sqrt(ndtr(eccentric)), _HIGHEST)
     anomaly = np.pi * (2.0 * ndtr(moment) - 1.0)
     tilt = 2.0 * ndtr(cosine) - 1.0
     orbit = Orbit(e, anomaly, np.pi * ndtr(argument), np.sqrt(1.0 - tilt**2))
@@ -133,7 +134,7 @@ def _born(birth: Birth, rng: np.random.Generator) -> Born:
 
 def _moments(eccentric: Array, rng: np.random.Generator) -> Array:
     """Draw the coordinate of the eccentric anomaly so that the moment is uniform in time, by Kepler's equation."""
-    e = np.sqrt(ndtr(eccentric))
+    e = np.minimum(np.sqrt(ndtr(eccentric)), _HIGHEST)
     mean = np.pi * (2.0 * rng.random(e.size) - 1.0)
     low, high = np.full_like(e, -np.pi), np.full_like(e, np.pi)
     for _ in range(60):  # E - e sin E is monotone

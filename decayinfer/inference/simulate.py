@@ -4,11 +4,16 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from decayinfer.channels.base import Channel
 from decayinfer.channels.registry import channel_names, load_channel
+from decayinfer.channels.rival import Rival
 from decayinfer.cooling.registry import choose_scenarios, load_scenario
+from decayinfer.cooling.scenario import Scenario
 from decayinfer.errors import InputError
 from decayinfer.inference.forward import draw_prior, evolve
 from decayinfer.inference.measurement import sample_index
+from decayinfer.inference.outcome import PARAMETERS
+from decayinfer.inference.rival_forward import evolve_rival
 from decayinfer.inference.settings import FitSettings
 from decayinfer.physics import torque
 from decayinfer.physics.constants import B_UNIT_G, T_UNIT_K
@@ -28,6 +33,7 @@ _BATCH = 4000
 _PERIODS = (0.02, 3.0)  # [s]
 _AGES = (5e3, 3e6)  # characteristic age [yr]
 _INDICES = (3.2, 120.0)
+_RIVAL_INDICES = (-120.0, 120.0)
 _RELATIVE_ERRORS = (0.02, 0.08)
 
 _COLUMNS: dict[str, tuple[str, str]] = {
@@ -48,12 +54,17 @@ _COLUMNS: dict[str, tuple[str, str]] = {
 }
 
 
+_MEASURED = ("period", "period_derivative", "braking_index", "braking_index_err")
+
+
 def simulate_table(n: int, seed: int = 1, settings: FitSettings | None = None) -> "Table":
     """Invent a sample.
 
     Each object takes a channel and a cooling scenario at random from the settings, and its parameters from the
     priors; it is kept if a timing programme could have measured it (period, characteristic age and index within
-    plain limits). The channel ``constant`` has nothing to measure beyond n = 3: it is left out unless it is alone.
+    plain limits). Without channels named, those with field decay are drawn from. Named, the rivals of decay are too,
+    and their own truths have columns; ``constant`` has nothing to measure beyond n = 3 and is left out unless it is
+    alone.
 
     Parameters
     ----------
@@ -85,8 +96,8 @@ def simulate_table(n: int, seed: int = 1, settings: FitSettings | None = None) -
         raise InputError(f"the number of objects must be positive, got {n}")
     settings = settings or FitSettings()
     rng = np.random.default_rng(seed)
-    channels = settings.channels or channel_names()
-    channels = tuple(name for name in channels if load_channel(name).decays) or channels
+    channels = settings.channels or channel_names(rivals=False)
+    channels = tuple(name for name in channels if name != "constant") or channels
     scenarios = choose_scenarios(settings.cooling)
     rows = [_one(str(rng.choice(channels)), str(rng.choice(scenarios)), settings, rng) for _ in range(n)]
     return _table(rows, seed)
@@ -97,13 +108,12 @@ def _one(
 ) -> dict[str, Any]:
     channel, scenario = load_channel(channel_name), load_scenario(scenario_name)
     for _ in range(25):
-        draws = draw_prior(_BATCH, settings.priors, rng)
-        today = evolve(draws, channel, scenario, settings.priors)
+        period, derivative, index, truths = _batch(channel, scenario, settings, rng)
         with np.errstate(divide="ignore", over="ignore"):  # a dead field has an infinite characteristic age
-            age = torque.characteristic_age(today.period, today.period_derivative)
-        kept = _within(today.period, _PERIODS) & _within(age, _AGES)
-        if channel.decays:
-            kept &= _within(today.braking_index, _INDICES)
+            age = torque.characteristic_age(period, derivative)
+        kept = _within(period, _PERIODS) & _within(age, _AGES)
+        if channel.name != "constant":
+            kept &= _within(index, _INDICES if channel.decays else _RIVAL_INDICES)
         if kept.any():
             i = int(np.argmax(kept))
             break
@@ -112,27 +122,40 @@ def _one(
             f"channel {channel_name} under {scenario_name} makes hardly any measurable index with these priors; "
             "choose other channels or wider priors"
         )
-    error = float(today.braking_index[i] * rng.uniform(*_RELATIVE_ERRORS))
-    measured = sample_index(today.braking_index[i : i + 1], error, error, settings.priors.scatter_sd, rng)[0]
-    nan = float("nan")
+    error = float(abs(index[i]) * rng.uniform(*_RELATIVE_ERRORS))
+    measured = sample_index(index[i : i + 1], error, error, settings.priors.scatter_sd, rng)[0]
     return {
-        "period": today.period[i],
-        "period_derivative": today.period_derivative[i],
+        "period": period[i],
+        "period_derivative": derivative[i],
         "braking_index": measured,
         "braking_index_err": error,
         "truth_channel": channel_name,
         "truth_cooling": scenario_name,
-        "truth_braking_index": today.braking_index[i],
-        "truth_mass": draws.mass[i],
-        "truth_impurity_parameter": draws.impurity_parameter[i] if channel.impurity else nan,
-        "truth_phonon_time": draws.phonon_time[i] if channel.phonon else nan,
-        "truth_hall_time": today.hall_time[i] if channel.hall else nan,
-        "truth_age": draws.age[i],
-        "truth_birth_field": draws.birth_field[i] * B_UNIT_G,
-        "truth_birth_period": draws.birth_period[i],
-        "truth_field": today.field[i] * B_UNIT_G,
-        "truth_crust_temperature": today.temperature[i] * T_UNIT_K,
+        **{f"truth_{name}": values[i] for name, values in truths.items()},
     }
+
+
+def _batch(
+    channel: Channel, scenario: Scenario, settings: FitSettings, rng: np.random.Generator
+) -> tuple[Any, Any, Any, dict[str, Any]]:
+    """Period, derivative, index and truths of many stars drawn from the priors."""
+    draws = draw_prior(_BATCH, settings.priors, rng)
+    if isinstance(channel, Rival):
+        return evolve_rival(draws, channel, scenario, settings.priors, rng)
+    today = evolve(draws, channel, scenario, settings.priors)
+    truths = {
+        "braking_index": today.braking_index,
+        "mass": draws.mass,
+        "age": draws.age,
+        "birth_field": draws.birth_field * B_UNIT_G,
+        "birth_period": draws.birth_period,
+        "field": today.field * B_UNIT_G,
+        "crust_temperature": today.temperature * T_UNIT_K,
+    }
+    truths |= {"impurity_parameter": draws.impurity_parameter} if channel.impurity else {}
+    truths |= {"phonon_time": draws.phonon_time} if channel.phonon else {}
+    truths |= {"hall_time": today.hall_time} if channel.hall else {}
+    return today.period, today.period_derivative, today.braking_index, truths
 
 
 def _within(values: Any, limits: tuple[float, float]) -> Any:
@@ -142,9 +165,13 @@ def _within(values: Any, limits: tuple[float, float]) -> Any:
 def _table(rows: list[dict[str, Any]], seed: int) -> "QTable":
     from astropy.table import Table
 
+    rivals = {f"truth_{p.name}": (p.unit, p.label) for p in PARAMETERS}
+    told = {key for row in rows for key in row}
+    columns = _COLUMNS | {key: rivals[key] for key in rivals if key in told - set(_COLUMNS)}
+    keys = [*_MEASURED, "truth_channel", "truth_cooling", *(key for key in columns if key not in _MEASURED)]
     names = [f"{_BIRDS[i % len(_BIRDS)]}-{i // len(_BIRDS) + 1}" for i in range(len(rows))]
-    table = Table({"name": names} | {key: [row[key] for row in rows] for key in rows[0]})
-    for name, (unit, description) in _COLUMNS.items():
+    table = Table({"name": names} | {key: [row.get(key, np.nan) for row in rows] for key in keys})
+    for name, (unit, description) in columns.items():
         table[name].unit = unit or None
         table[name].description = description
         table[name].info.format = ".10g"
