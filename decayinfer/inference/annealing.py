@@ -50,24 +50,33 @@ class Normal:
         return total
 
 
-def anneal(ln_target: Callable[[Array], Array], start: Normal, rng: np.random.Generator) -> Weighted:
+def anneal(
+    ln_target: Callable[[Array], Array],
+    start: Normal | StudentMixture,
+    rng: np.random.Generator,
+    *,
+    scale: int = 1,
+) -> Weighted:
     """Sample and integrate a density.
 
     Parameters
     ----------
     ln_target : callable
         Log density of points, (n, d) to (n,); minus infinity where it vanishes.
-    start : Normal
+    start : Normal or StudentMixture
         First proposal, wide enough to hold the target.
     rng : numpy.random.Generator
         Source of randomness.
+    scale : int
+        Factor on the points of a sweep, and on those that it must keep.
 
     Raises
     ------
     SamplingError
         If the density vanishes at every point proposed.
     """
-    points, count = start.sample(POINTS, rng), POINTS
+    count = scale * POINTS
+    points = start.sample(count, rng)
     ln_proposal = start.ln_density(points)
     for sweep in range(_SWEEPS):
         ln_density, ln_start = ln_target(points), start.ln_density(points)
@@ -77,10 +86,10 @@ def anneal(ln_target: Callable[[Array], Array], start: Normal, rng: np.random.Ge
         if weighted.effective_size >= _WANTED and sound(weighted):
             break
         ln_ratio, ln_base = ln_density - ln_start, ln_start - ln_proposal
-        power = _power(ln_ratio, ln_base)
-        fitted = fit_mixture(Weighted(points, power * ln_ratio + ln_base).resample(_FITTED, rng))
+        power = _power(ln_ratio, ln_base, scale * _LEAST)
+        fitted = fit_mixture(Weighted(points, power * ln_ratio + ln_base).resample(scale * _FITTED, rng))
         if power == 1.0 and sweep >= _PATIENCE:
-            count = min(2 * count, 8 * POINTS)
+            count = min(2 * count, 8 * scale * POINTS)
         proposals: tuple[StudentMixture | Normal, ...] = (fitted, fitted.broadened(_BROADER), start)
         shares = (1.0 - 2.0 * _DEFENCE, _DEFENCE, _DEFENCE)
         sizes = [round(share * count) for share in shares]
@@ -95,18 +104,18 @@ def sound(weighted: Weighted) -> bool:
     return weighted.effective_size >= _FLOOR and weighted.pareto_k < 0.7
 
 
-def _power(ln_ratio: Array, ln_base: Array) -> float:
-    """Largest power of the ratio, at most one, that leaves the least effective size; by bisection."""
+def _power(ln_ratio: Array, ln_base: Array, least: float) -> float:
+    """Largest power of the ratio, at most one, that leaves that effective size; by bisection."""
 
     def size(power: float) -> float:
         ln_weights = power * ln_ratio + ln_base
         weights = np.exp(ln_weights - ln_weights.max())
         return float(weights.sum() ** 2 / np.sum(weights**2))
 
-    if size(1.0) >= _LEAST:
+    if size(1.0) >= least:
         return 1.0
     low, high = 0.0, 1.0
     for _ in range(30):
         middle = 0.5 * (low + high)
-        low, high = (middle, high) if size(middle) >= _LEAST else (low, middle)
+        low, high = (middle, high) if size(middle) >= least else (low, middle)
     return max(low, 1e-6)

@@ -243,6 +243,13 @@ def test_columns_can_be_mapped(sample):
     assert (problem.row, problem.column) == (2, "t_low")
 
 
+def test_truths_of_an_invented_sample_are_no_misspelling(sample):
+    sample["truth_glitch_nudot_step"] = [1e-3] * 3
+    assert read_table(sample).problems == ()
+    sample.rename_column("truth_glitch_nudot_step", "glitch_nudott_step")
+    assert [p.column for p in read_table(sample).problems] == ["glitch_nudott_step"]
+
+
 def test_a_file_holds_them_too(tmp_path):
     header = (
         "name,period,period_derivative,braking_index,braking_index_err,age,age_err,obliquity_max,index_kind\n"
