@@ -1,13 +1,17 @@
-"""Write the page and the figure of this folder from the scenarios that ship.
+"""Write the pages and figures of this folder from the scenarios that ship.
 
     python docs/cooling/make.py
 
-needs matplotlib, which ``pip install 'decayinfer[docs]'`` brings.
+needs matplotlib, which ``pip install 'decayinfer[docs]'`` brings, and about two minutes: the cards hold every fit
+against the solver.
 """
 
 from pathlib import Path
 
 import numpy as np
+from cards import card, draw, solve, t_b
+from drawing import AGE, COLOURS, error_text, new, save
+from surface import surface_figure, surface_page
 
 from decayinfer.cooling.recipes import SUPERFLUIDITY
 from decayinfer.cooling.registry import load_scenario, scenario_names, standard_names
@@ -15,7 +19,6 @@ from decayinfer.cooling.scenario import Scenario
 
 FOLDER = Path(__file__).parent
 MASSES = {1.1: "-", 1.4: "--", 1.8: ":"}  # M_sun, and the line of each
-COLOURS = ("#1b6f6a", "#c2571a", "#6d4a9c", "#3f3f3f")
 
 HEAD = """\
 # Cooling scenarios
@@ -23,7 +26,8 @@ HEAD = """\
 A scenario gives the temperature T_b at the base of the envelope as a function of age and mass, and the radius
 and moment of inertia of the star. The computed ones are solved from an equation of state up and fitted by one
 closed form (`python -m decayinfer.cooling.build`); `decayinfer cooling` lists them, and `decayinfer cooling NAME`
-shows one. This page is made by `python docs/cooling/make.py`.
+shows one. This page, the card of every scenario behind its name below, and
+[surface temperatures of real stars](surface_temperature.md) are made by `python docs/cooling/make.py`.
 
 A fit without `--cooling` takes the *standard* set; `--cooling` takes a list of names, or `all` for every
 computed scenario, or the path of your own table with columns `age` [yr], `mass` [M_sun] and `temperature` [K]
@@ -62,67 +66,54 @@ TAIL = """
 
 """
 
+TABLE = (
+    "name",
+    "EOS",
+    "pairing",
+    "envelope",
+    "direct Urca",
+    "set",
+    "error of T_b",
+    "error of slope",
+    "sources",
+)
+
 
 def figure() -> None:
     """Draw T_b(t) of the standard set."""
-    import matplotlib as mpl
-
-    mpl.use("svg")
-    import matplotlib.pyplot as plt
-
-    ages = np.geomspace(300.0, 1e7, 181)
-    mpl.rcParams |= {"svg.hashsalt": "decayinfer", "font.size": 10}
-    canvas, panels = plt.subplots(2, 2, figsize=(8.4, 6.4), sharex=True, sharey=True, layout="constrained")
-    for panel, name, colour in zip(panels.flat, standard_names(), COLOURS, strict=True):
-        scenario = load_scenario(name)
+    ages = np.geomspace(*AGE, 61)
+    canvas, panels = new(2, 2, figsize=(8.4, 6.4), sharex=True, sharey=True)
+    for panel, name, colour in zip(panels, standard_names(), COLOURS, strict=True):
         for mass, line in MASSES.items():
-            temperature = 1e8 * np.exp(scenario.ln_temperature(np.log(ages), mass))
-            panel.loglog(ages, temperature, line, color=colour, lw=1.6, label=rf"{mass} M$_\odot$")
+            panel.plot(
+                ages,
+                t_b(load_scenario(name), ages, mass),
+                line,
+                color=colour,
+                lw=1.6,
+                label=rf"{mass} M$_\odot$",
+            )
         panel.set_title(name, loc="left", fontsize=10)
-        panel.grid(alpha=0.25, lw=0.5)
-        panel.legend(frameon=False, loc="lower left")
-    panels[0, 0].set(xlim=(300.0, 1e7), ylim=(3e6, 1e9))
+        panel.set(xscale="log", yscale="log", xlim=AGE, ylim=(3e6, 1e9))
+        panel.minorticks_off()
+    panels[0].legend(frameon=False, loc="lower left")
     canvas.supxlabel("age t [yr]")
     canvas.supylabel(r"T$_b$ [K]")
-    canvas.savefig(FOLDER / "standard.svg", metadata={"Date": None})
+    save(canvas, FOLDER / "standard.svg")
 
 
 def table(scenarios: list[Scenario]) -> str:
     """Return the table of the page."""
-    heads = (
-        "name",
-        "EOS",
-        "pairing",
-        "envelope",
-        "direct Urca",
-        "set",
-        "error of T_b",
-        "error of slope",
-        "sources",
-    )
-    lines = ["| " + " | ".join(heads) + " |", "|" + " --- |" * len(heads)]
+    lines = ["| " + " | ".join(TABLE) + " |", "|" + " --- |" * len(TABLE)]
     papers = sources(scenarios)
     for s in scenarios:
         group = "provisional" if s.provisional else "standard" if s.standard else "by name"
         numbers = ", ".join(map(str, sorted(papers.index(source) + 1 for source in s.sources)))
-        pairing = SUPERFLUIDITY.get(s.properties["superfluidity"], ("not considered",))[0]
+        pairing = SUPERFLUIDITY[s.properties["superfluidity"]][0] if not s.provisional else "not considered"
         physics = (s.properties["eos"], pairing, s.properties["envelope"], s.properties["direct_urca"])
-        lines.append("| " + " | ".join((f"`{s.name}`", *physics, group, *errors(s), numbers)) + " |")
+        cells = (f"[`{s.name}`](cards/{s.name}.md)", *physics, group, *error_text(s), numbers)
+        lines.append("| " + " | ".join(cells) + " |")
     return "\n".join(lines)
-
-
-def errors(scenario: Scenario) -> tuple[str, str]:
-    """Return the errors of T_b and of the slope."""
-    found = scenario.fit_error
-    if not found:
-        return "-", "-"
-    temperature, slope = f"{found['temperature']:.2%}", f"{found['slope']:.3f}"
-    if "temperature_away" in found:
-        near, away = found["temperature_near_threshold"], found["temperature_away"]
-        temperature = f"{away:.2%}; near the threshold {near:.2%}"
-    if "slope_young" in found:
-        slope += f"; from 1e3 yr {found['slope_young']:.3f}"
-    return temperature, slope
 
 
 def sources(scenarios: list[Scenario]) -> list[str]:
@@ -131,16 +122,23 @@ def sources(scenarios: list[Scenario]) -> list[str]:
 
 
 def page() -> str:
-    """Return the page."""
+    """Return the index."""
     scenarios = [load_scenario(name) for name in scenario_names()]
     papers = "\n".join(f"{i}. {paper}" for i, paper in enumerate(sources(scenarios), 1))
     return HEAD + table(scenarios) + "\n" + TAIL + papers + "\n"
 
 
 def main() -> None:
-    """Write both files."""
-    (FOLDER / "index.md").write_text(page(), encoding="utf-8")
+    """Write everything."""
+    (FOLDER / "cards").mkdir(exist_ok=True)
+    for name in scenario_names():
+        scenario, solved = load_scenario(name), solve(name)
+        draw(scenario, solved, FOLDER / "cards" / f"{name}.svg")
+        (FOLDER / "cards" / f"{name}.md").write_text(card(scenario, solved), encoding="utf-8")
     figure()
+    surface_figure(FOLDER / "surface_temperature.svg")
+    (FOLDER / "surface_temperature.md").write_text(surface_page(), encoding="utf-8")
+    (FOLDER / "index.md").write_text(page(), encoding="utf-8")
 
 
 if __name__ == "__main__":

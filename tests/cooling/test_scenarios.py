@@ -1,7 +1,4 @@
-"""What the scenarios that ship say together, and the page that describes them."""
-
-import importlib.util
-from pathlib import Path
+"""What the scenarios that ship say together."""
 
 import numpy as np
 import pytest
@@ -9,7 +6,6 @@ import pytest
 from decayinfer.cooling.recipes import RECIPES
 from decayinfer.cooling.registry import load_scenario
 
-DOCS = Path(__file__).parents[2] / "docs" / "cooling"
 SLOW = [name for name, r in RECIPES.items() if r.superfluidity in ("normal", "protons") and not r.direct_urca]
 
 
@@ -38,11 +34,3 @@ def test_direct_urca_acts_on_heavy_stars_alone(pairing):
     ln_age = np.log(np.geomspace(1e3, 1e6, 31))
     assert fast.ln_temperature(ln_age, 1.2) == pytest.approx(slow.ln_temperature(ln_age, 1.2), abs=0.02)
     assert fast.ln_temperature(np.log(1e4), 1.95) < slow.ln_temperature(np.log(1e4), 1.95) - 0.1
-
-
-def test_the_page_is_that_of_the_data_files():
-    spec = importlib.util.spec_from_file_location("cooling_page", DOCS / "make.py")
-    make = importlib.util.module_from_spec(spec)
-    spec.loader.exec_module(make)
-    assert (DOCS / "index.md").read_text(encoding="utf-8") == make.page()
-    assert (DOCS / "standard.svg").exists()
