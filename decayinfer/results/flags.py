@@ -107,6 +107,13 @@ FLAGS = {
             "See what decayinfer check says about the row.",
         ),
         Flag(
+            "measurements-disagree",
+            "A further measurement (age, surface temperature, thermal luminosity or obliquity) lies where the posterior "
+            "without it leaves less than 0.003.",
+            "Do not quote the joint posterior: check the measurement, its error, and whether the channel or the cooling "
+            "scenario holds for this object.",
+        ),
+        Flag(
             "limit-only",
             "The braking index is an upper limit.",
             "The posterior tells what the limit rules out; it cannot name a channel.",

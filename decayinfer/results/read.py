@@ -20,7 +20,7 @@ if TYPE_CHECKING:
 
 __all__ = ["Run", "read_run", "read_table_file"]
 
-_TABLES = ("objects", "channels", "parameters")
+_TABLES = ("objects", "channels", "parameters", "sensitivity")
 
 
 @dataclass(frozen=True)
@@ -53,8 +53,13 @@ class Run:
         """A row per object, scenario, channel (or ``averaged``) and parameter: prior and posterior."""
         return _frame(self.table("parameters"))
 
+    @cached_property
+    def sensitivity(self) -> "DataFrame":
+        """A row per object, reading of n or prior setting or scenario left out, and channel: its probability."""
+        return _frame(self.table("sensitivity"))
+
     def table(self, name: str) -> "Table":
-        """Return a table with units: ``objects``, ``channels``, ``parameters`` or the ``input``.
+        """Return a table with units: ``objects``, ``channels``, ``parameters``, ``sensitivity`` or the ``input``.
 
         Raises
         ------

@@ -11,6 +11,8 @@ from decayinfer.catalog.pulsar import Pulsar
 from decayinfer.inference.outcome import PARAMETERS, ChannelFit, ObjectFit, Parameter, Status
 from decayinfer.results.average import Probabilities, channel_probabilities, mix_draws
 from decayinfer.results.flags import join_flags, warns
+from decayinfer.results.sensitivity import Trial, sensitivity_rows, trials
+from decayinfer.results.trust import information, predictive_tail
 from decayinfer.results.verdict import Constraint, Interval, constraint, verdict
 
 if TYPE_CHECKING:
@@ -32,11 +34,12 @@ type _Floats = NDArray[np.float64]
 
 @dataclass(frozen=True)
 class ObjectRows:
-    """The rows of one object in the three tables, column name to value."""
+    """The rows of one object in the tables, column name to value."""
 
     objects: Row
     channels: tuple[Row, ...]
     parameters: tuple[Row, ...]
+    sensitivity: tuple[Row, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -78,14 +81,31 @@ def summarise(
         chosen = [m for run, m in zip(fit.fits, mixing, strict=True) if run.scenario == scenario]
         rows += _averaged_rows(fit.name, scenario, probabilities.within(scenario), chosen, settings.seed)
     overall = _averaged_rows(fit.name, AVERAGED, probabilities, mixing, settings.seed)
+    made = trials(fit, prior_odds)
+    averaged = {row["parameter"]: row for row in overall}
     return ObjectRows(
-        objects=_object_row(pulsar, probabilities, {row["parameter"]: row for row in overall}),
+        objects=_object_row(pulsar, probabilities, averaged, made, _tail(pulsar, probabilities, settings)),
         channels=tuple(_channel_row(probabilities, k) for k in range(len(fit.fits))),
         parameters=(*rows, *overall),
+        sensitivity=sensitivity_rows(fit, made),
     )
 
 
-def _object_row(pulsar: Pulsar, probabilities: Probabilities, averaged: Mapping[str, Row]) -> Row:
+def _tail(pulsar: Pulsar, probabilities: Probabilities, settings: "FitSettings") -> float:
+    """Tail probability of the observed n among those that the averaged posterior predicts."""
+    draws = [fit.posterior("braking_index") for fit in probabilities.fits]
+    indices = mix_draws(draws, probabilities.values, seed=settings.seed, name=pulsar.name)
+    errors = pulsar.braking_index_err_minus, pulsar.braking_index_err_plus
+    return predictive_tail(indices, pulsar.braking_index, *errors, settings.priors.scatter_sd)
+
+
+def _object_row(
+    pulsar: Pulsar,
+    probabilities: Probabilities,
+    averaged: Mapping[str, Row],
+    made: Sequence[Trial],
+    tail: float,
+) -> Row:
     channels = list(dict.fromkeys(fit.channel for fit in probabilities.fits))
     chances = {channel: probabilities.of_channel(channel) for channel in channels}
     best = max(channels, key=lambda c: np.nan_to_num(chances[c][0], nan=-1.0)) if probabilities.known else ""
@@ -102,10 +122,12 @@ def _object_row(pulsar: Pulsar, probabilities: Probabilities, averaged: Mapping[
         "best_probability": chances[best][0] if best else np.nan,
         "best_probability_err": chances[best][1] if best else np.nan,
         **{f"probability_{channel}": chances[channel][0] for channel in channels},
+        "probability_any_decay": made[0].decay()[0],
+        "predictive_p": tail,
         **_named(mass, "mass_"),
         **_named(mass_prior, "mass_prior_"),
         **_named(phonon_time, "phonon_time_"),
-        "verdict": verdict(probabilities, mass, mass_prior),
+        "verdict": verdict(probabilities, mass, mass_prior, made),
         "flags": join_flags(_object_flags(pulsar, probabilities, constraint(mass, mass_prior))),
     }
 
@@ -206,6 +228,7 @@ def _parameter_row(
         "ess_bulk": mixing.ess_bulk,
         "r_hat": mixing.r_hat,
         "share": share,
+        "information": information(posterior, prior),
     }
 
 

@@ -1,4 +1,4 @@
-"""The three tables of a run: their columns, units and descriptions, and their bytes.
+"""The tables of a run: their columns, units and descriptions, and their bytes.
 
 Numbers are written with ten significant digits, nothing in a table tells the time, and rows follow the order
 of the input, the scenarios and the channels. So the same draws give the same bytes.
@@ -25,6 +25,7 @@ if TYPE_CHECKING:
 __all__ = [
     "CHANNEL_COLUMNS",
     "PARAMETER_COLUMNS",
+    "SENSITIVITY_COLUMNS",
     "Column",
     "any_to_ecsv",
     "check_new_table",
@@ -101,6 +102,19 @@ PARAMETER_COLUMNS = (
     Column("ess_bulk", "bulk effective sample size"),
     Column("r_hat", "R-hat"),
     Column("share", "share of the averaged probability over which the parameter is defined"),
+    Column("information", "Kullback-Leibler divergence of posterior from prior", "bit"),
+)
+
+#: Columns of sensitivity.ecsv.
+SENSITIVITY_COLUMNS = (
+    Column("object", "name of the object", kind=str),
+    Column("varied", "what is varied: reading (of n), priors or scenarios", kind=str),
+    Column("setting", "to what; the reading scattered is the default of the other tables", kind=str),
+    Column("channel", "channel, or any decay for the decay channels together", kind=str),
+    Column("probability", "probability of the channel, over all scenarios"),
+    Column("probability_err", "Monte Carlo standard error of probability"),
+    Column("ln_evidence", "ln p(n | P, Pdot, channel), averaged over scenarios by their weights"),
+    Column("ln_evidence_err", "standard error of ln_evidence"),
 )
 
 
@@ -117,6 +131,8 @@ def object_columns(channels: Iterable[str]) -> tuple[Column, ...]:
         Column("best_probability", "probability of the most probable channel, over all scenarios"),
         Column("best_probability_err", "Monte Carlo standard error of best_probability"),
         *(Column(f"probability_{c}", f"probability of {c}, over all scenarios") for c in channels),
+        Column("probability_any_decay", "probability of all decay channels together"),
+        Column("predictive_p", "two-sided tail probability of the observed n under the averaged posterior"),
         *_interval_columns("mass", "mass, averaged over channels and scenarios", "Msun"),
         *_interval_columns("mass_prior", "mass given P and Pdot but not n", "Msun"),
         *_interval_columns("phonon_time", "phonon time at 1e8 K, averaged where phonons act", "yr"),
@@ -224,7 +240,7 @@ def save_table(table: "Table", path: Path) -> None:
 
 
 def write_tables(folder: Path, rows: Sequence["ObjectRows"], channels: Sequence[str]) -> None:
-    """Write objects.ecsv, channels.ecsv and parameters.ecsv into a run folder.
+    """Write objects.ecsv, channels.ecsv, parameters.ecsv and sensitivity.ecsv into a run folder.
 
     Raises
     ------
@@ -233,6 +249,8 @@ def write_tables(folder: Path, rows: Sequence["ObjectRows"], channels: Sequence[
     """
     channel_rows = [row for each in rows for row in each.channels]
     parameter_rows = [row for each in rows for row in each.parameters]
+    sensitivity_rows = [row for each in rows for row in each.sensitivity]
+    write_whole(folder / "sensitivity.ecsv", to_ecsv(to_table(sensitivity_rows, SENSITIVITY_COLUMNS)))
     write_whole(folder / "parameters.ecsv", to_ecsv(to_table(parameter_rows, PARAMETER_COLUMNS)))
     write_whole(folder / "channels.ecsv", to_ecsv(to_table(channel_rows, CHANNEL_COLUMNS)))
     write_whole(

@@ -1,12 +1,15 @@
 """The answer for one object in plain words."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from enum import StrEnum
 
 import numpy as np
 
+from decayinfer.channels.registry import load_channel
 from decayinfer.inference.outcome import ChannelFit, Status
 from decayinfer.results.average import Probabilities
+from decayinfer.results.sensitivity import Trial
 
 __all__ = ["Constraint", "Interval", "constraint", "verdict"]
 
@@ -62,8 +65,11 @@ def constraint(posterior: Interval, prior: Interval) -> Constraint:
     return Constraint.MOVED if moved else Constraint.NONE
 
 
-def verdict(probabilities: Probabilities, mass: Interval, mass_prior: Interval) -> str:
-    """Say in plain words which channel leads, by what odds, and what is learnt of the mass.
+def verdict(
+    probabilities: Probabilities, mass: Interval, mass_prior: Interval, made: Sequence[Trial] = ()
+) -> str:
+    """Say in plain words which channel leads, by what odds, whether decay holds however n is read, and what is learnt
+    of the mass.
 
     Parameters
     ----------
@@ -71,6 +77,8 @@ def verdict(probabilities: Probabilities, mass: Interval, mass_prior: Interval) 
         Probabilities over the object's posterior runs.
     mass, mass_prior : Interval
         Averaged posterior of the mass, and its prior given P and Pdot [Msun].
+    made : sequence of Trial
+        The same under other readings of n, priors and scenarios, the default first.
 
     Returns
     -------
@@ -81,6 +89,9 @@ def verdict(probabilities: Probabilities, mass: Interval, mass_prior: Interval) 
         return _no_channel(probabilities.fits)
     clauses = [
         _channel_clause(probabilities),
+        _rival_clause(probabilities),
+        _reading_clause(made),
+        _assumption_clause(made),
         _failed_clause(probabilities.fits),
         _mass_clause(mass, mass_prior),
     ]
@@ -112,6 +123,49 @@ def _channel_clause(probabilities: Probabilities) -> str:
     ratio = p / others[0][0]
     close = ", too close to call" if ratio < CLOSE_ODDS else ""
     return f"{best} most probable ({p:.2f}), odds {_odds(ratio)} over {others[0][1]}{close}"
+
+
+def _rival_clause(probabilities: Probabilities) -> str:
+    """Set decay as a whole against the best of what is not decay."""
+    decay, _ = probabilities.of(lambda fit: load_channel(fit.channel).decays)
+    others = {fit.channel for fit in probabilities.fits if not load_channel(fit.channel).decays}
+    chances = sorted(((probabilities.of_channel(name)[0], name) for name in others), reverse=True)
+    chances = [(p, name) for p, name in chances if p > 0.0]
+    if not decay > 0.0 or not chances:
+        return ""
+    p, rival = chances[0]
+    ratio = decay / p
+    if max(ratio, 1.0 / ratio) < CLOSE_ODDS:
+        order = f"odds {_odds(ratio)}" if ratio >= 1.0 else f"odds 1:{1.0 / ratio:.1f}"
+        return f"decay and {rival} cannot be told apart ({order})"
+    return f"decay as a whole has {decay:.2f}"
+
+
+def _reading_clause(made: Sequence[Trial]) -> str:
+    """Say whether the readings of n agree on decay."""
+    chances = {trial.name: trial.decay()[0] for trial in made if trial.kind == "reading"}
+    if len(chances) < 3 or not all(np.isfinite(p) for p in chances.values()) or max(chances.values()) == 0.0:
+        return ""
+    quoted, scattered, noisy = (chances[name] for name in ("quoted", "scattered", "with-noise"))
+    values = f"{quoted:.2f} with the quoted error, {scattered:.2f} with excess scatter, {noisy:.2f} with spin noise"
+    sides = {p >= 0.5 for p in chances.values()}
+    return (
+        f"all readings of n agree on decay ({values})"
+        if len(sides) == 1
+        else f"readings differ on decay: {values}"
+    )
+
+
+def _assumption_clause(made: Sequence[Trial]) -> str:
+    """Name the priors or the scenario whose change turns the majority for or against decay."""
+    if not made or not np.isfinite(base := made[0].decay()[0]):
+        return ""
+    turning = [
+        f"{trial.name}{' priors' if trial.kind == 'priors' else ''} ({p:.2f})"
+        for trial in made
+        if trial.kind != "reading" and np.isfinite(p := trial.decay()[0]) and (p >= 0.5) != (base >= 0.5)
+    ]
+    return f"the majority for or against decay turns with {', '.join(turning)}" if turning else ""
 
 
 def _odds(ratio: float) -> str:

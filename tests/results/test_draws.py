@@ -83,8 +83,8 @@ def test_damaged_files_are_refused_with_a_remedy(tmp_path, engine, settings, kee
 
 def test_another_layout_is_refused(tmp_path, monkeypatch):
     save_channel_fit(tmp_path / "x.nc", ChannelFit("A", "cool", "hall", Status.FAILED))
-    monkeypatch.setattr(module, "LAYOUT", 2)
-    with pytest.raises(RunFolderError, match="has layout 1, this decayinfer reads layout 2"):
+    monkeypatch.setattr(module, "LAYOUT", 3)
+    with pytest.raises(RunFolderError, match="has layout 2, this decayinfer reads layout 3"):
         read_header(tmp_path / "x.nc")
 
 
