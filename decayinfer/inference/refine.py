@@ -7,6 +7,7 @@ again for.
 """
 
 from collections.abc import Callable, Sequence
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,14 +17,16 @@ from decayinfer.cooling.scenario import Scenario
 from decayinfer.errors import SamplingError
 from decayinfer.inference.annealing import anneal, sound
 from decayinfer.inference.density import evaluate
+from decayinfer.inference.diagnostics import bulk_ess, r_hat, tail_ess
+from decayinfer.inference.explore import Exploration, Quality
 from decayinfer.inference.importance import Weighted
 from decayinfer.inference.problem import Problem
 from decayinfer.inference.proposal import fit_mixture
 from decayinfer.inference.report import parameters
-from decayinfer.inference.state import state_of
+from decayinfer.inference.state import ln_measured, state_of
 from decayinfer.measurements import Measurement, State
 
-__all__ = ["DISAGREE", "Target", "contradiction", "contradictions", "decay_target", "refine"]
+__all__ = ["DISAGREE", "Target", "contradiction", "contradictions", "decay_target", "refine", "refine_run"]
 
 type Array = NDArray[np.float64]
 
@@ -84,8 +87,8 @@ def refine(
     """
     if not measurements:
         return weighted
-    ln_likelihood = _ln_likelihood(target(weighted.points)[1], measurements)
-    reweighted = Weighted(weighted.points, weighted.ln_weights + ln_likelihood)
+    ln_likelihood = ln_measured(target(weighted.points)[1], measurements)
+    reweighted = replace(weighted, ln_weights=weighted.ln_weights + ln_likelihood)
     if not np.isfinite(reweighted.ln_weights).any():
         names = ", ".join(str(measurement) for measurement in measurements)
         raise SamplingError(f"no star of this channel and scenario agrees with {names}; check those values")
@@ -100,6 +103,55 @@ def refine(
     points = rng.standard_normal((found.ln_weights.size, active.size))
     points[:, used] = found.points
     return Weighted(points, found.ln_weights)
+
+
+def refine_run(
+    run: Exploration,
+    target: Target,
+    active: Array,
+    measurements: Sequence[Measurement],
+    rng: np.random.Generator,
+) -> tuple[Exploration, dict[str, float]]:
+    """Return the exploration of a density times the likelihood of further measurements, and `contradictions`.
+
+    Draws come from the refined weights, as many chains and draws as the run had; without measurements the run is
+    returned as it is.
+
+    Parameters
+    ----------
+    run : Exploration
+        Of the density without the measurements.
+    target, active, measurements, rng
+        As in `refine`.
+
+    Raises
+    ------
+    SamplingError
+        If the measurements exclude every point of the density.
+    """
+    if not measurements:
+        return run, {}
+    tails = contradictions(target, run.weighted, measurements)
+    weighted = refine(target, active, run.weighted, measurements, rng)
+    shape = run.points.shape
+    points = weighted.resample(shape[0] * shape[1], rng).reshape(shape)
+    used, worth = points[:, :, active > 0.0], weighted.effective_size
+    quality = Quality(  # resampled draws repeat: they are worth no more than the weights they came from
+        ess_bulk=min(float(np.min(bulk_ess(used))), worth),
+        ess_tail=min(float(np.min(tail_ess(used))), worth),
+        r_hat=float(np.max(r_hat(used))),
+        divergences=0,
+        draws=shape[0] * shape[1],
+    )
+    refined = replace(
+        run,
+        points=points,
+        diverging=np.zeros(shape[:2], dtype=bool),
+        quality=quality,
+        weighted=weighted,
+        converged=run.converged and sound(weighted),
+    )
+    return refined, tails
 
 
 def contradiction(weighted: Weighted, state: State, measurement: Measurement) -> float:
@@ -131,11 +183,17 @@ def contradiction(weighted: Weighted, state: State, measurement: Measurement) ->
 def contradictions(
     target: Target, weighted: Weighted, measurements: Sequence[Measurement]
 ) -> dict[str, float]:
-    """Return `contradiction` of each measurement, by name, under a posterior without any of them."""
+    """Return `contradiction` of each measurement under a posterior without any of them.
+
+    By name, the smallest where two are of one kind.
+    """
     if not measurements:
         return {}
     state = target(weighted.points)[1]
-    return {each.name: contradiction(weighted, state, each) for each in measurements}
+    found: dict[str, float] = {}
+    for each in measurements:
+        found[each.name] = min(found.get(each.name, 1.0), contradiction(weighted, state, each))
+    return found
 
 
 def _product(target: Target, active: Array, measurements: Sequence[Measurement]) -> Callable[[Array], Array]:
@@ -148,12 +206,7 @@ def _product(target: Target, active: Array, measurements: Sequence[Measurement])
         full[:, used] = points
         ln_density, state = target(full)
         # idle coordinates stand at zero, where their own density is (2 pi)^(-1/2) each
-        total: Array = ln_density + 0.5 * idle * _LN_2PI + _ln_likelihood(state, measurements)
+        total: Array = ln_density + 0.5 * idle * _LN_2PI + ln_measured(state, measurements)
         return total
 
     return ln_product
-
-
-def _ln_likelihood(state: State, measurements: Sequence[Measurement]) -> Array:
-    total: Array = np.sum([measurement.ln_likelihood(state) for measurement in measurements], axis=0)
-    return total

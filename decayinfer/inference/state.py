@@ -1,15 +1,15 @@
 """What a star of given parameters is like today, as far as further measurements see it."""
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
 
 from decayinfer.cooling.envelope import ENVELOPES, photon_luminosity, surface_temperature
 from decayinfer.cooling.scenario import Scenario
-from decayinfer.measurements import State
+from decayinfer.measurements import Measurement, State
 
-__all__ = ["envelope_of", "state_of"]
+__all__ = ["envelope_of", "ln_measured", "state_of"]
 
 type Array = NDArray[np.float64]
 
@@ -50,3 +50,11 @@ def state_of(parameters: Mapping[str, Array], scenario: Scenario) -> State:
         obliquity=parameters.get("obliquity"),
         braking_index=parameters["braking_index"],
     )
+
+
+def ln_measured(state: State, measurements: Sequence[Measurement]) -> Array:
+    """Return ln p(measurements | state), (n,); zero without measurements."""
+    total = np.zeros_like(state.age)
+    for measurement in measurements:
+        total = total + measurement.ln_likelihood(state)
+    return total

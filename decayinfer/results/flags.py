@@ -108,10 +108,10 @@ FLAGS = {
         ),
         Flag(
             "measurements-disagree",
-            "A further measurement (age, surface temperature, thermal luminosity or obliquity) lies where the posterior "
-            "without it leaves less than 0.003.",
-            "Do not quote the joint posterior: check the measurement, its error, and whether the channel or the cooling "
-            "scenario holds for this object.",
+            "A further measurement (age, surface temperature, thermal luminosity or obliquity) lies where the "
+            "posterior without it leaves less than 0.003.",
+            "Do not quote the joint posterior: check the measurement, its error, and whether the channel or the "
+            "cooling scenario holds for this object.",
         ),
         Flag(
             "limit-only",
