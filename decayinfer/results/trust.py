@@ -56,11 +56,12 @@ def predictive_tail(
         return np.nan
     levels: _Floats = (np.arange(20.0) + 0.5) / 20.0
     factors = np.exp(scatter_sd * _half_normal(levels))
-    gap = observed - indices
-    error = np.where(
-        gap > 0.0, err_minus, err_plus
-    )  # a measurement above the index errs towards its lower error
-    above = float(np.mean(ndtr(-gap[:, None] / (error[:, None] * factors))))
+    gap = (observed - indices)[:, None]
+    # a measurement above the index is judged by its lower error; the halves weigh as their widths
+    share = 2.0 / (err_minus + err_plus)
+    beyond = share * err_minus * ndtr(-gap / (err_minus * factors))
+    short = 1.0 - share * err_plus * ndtr(gap / (err_plus * factors))
+    above = float(np.mean(np.where(gap > 0.0, beyond, short)))
     return 2.0 * min(above, 1.0 - above)
 
 
