@@ -214,6 +214,22 @@ def cooling(
         typer.echo("standard: fitted when --cooling names none; --cooling all takes all but the provisional")
 
 
+@app.command()
+@_guarded
+def compare(
+    run: Annotated[Path, typer.Argument(help="A finished run folder.")],
+    first: Annotated[str, typer.Argument(metavar="CHANNEL", help="Channel whose evidence is divided.")],
+    second: Annotated[str, typer.Argument(metavar="CHANNEL", help="Channel whose evidence divides.")],
+    objects: Annotated[str, typer.Option(metavar="LIST", help="Objects; default all.")] = "",
+) -> None:
+    """Bayes factors of two channels, per object and cooling scenario and averaged."""
+    from decayinfer.results.compare import HEADER, listing
+    from decayinfer.results.compare import compare as factors
+    from decayinfer.results.read import read_run
+
+    print_table(HEADER, listing(factors(read_run(run), first, second, objects=_names(objects))))
+
+
 def _fit_and_show(catalog: "Catalog", out: Path, settings: "FitSettings", jobs: int) -> None:
     from decayinfer.results.read import read_run
     from decayinfer.results.run import run_fit
