@@ -20,15 +20,15 @@ def run(tmp_path, engine, catalogue, settings):
 
 
 def test_factors_are_ratios_of_the_stored_evidences(run):
-    frame = run.compare("phonon", "constant").set_index(["object", "scenario"])
+    frame = run.compare("phonon", "phonon+hall").set_index(["object", "scenario"])
     stored = run.channels.set_index(["object", "scenario", "channel"]).ln_evidence
     for scenario in ("cool", "warm"):
-        expected = stored["A", scenario, "phonon"] - stored["A", scenario, "constant"]
+        expected = stored["A", scenario, "phonon"] - stored["A", scenario, "phonon+hall"]
         assert frame.loc[("A", scenario)].ln_bayes_factor == pytest.approx(expected, rel=1e-6)
     weights = [load_scenario(scenario).weight for scenario in ("cool", "warm")]
     means = [
         np.average([np.exp(stored["A", scenario, c]) for scenario in ("cool", "warm")], weights=weights)
-        for c in ("phonon", "constant")
+        for c in ("phonon", "phonon+hall")
     ]
     assert frame.loc[("A", "averaged")].ln_bayes_factor == pytest.approx(
         np.log(means[0] / means[1]), rel=1e-6
