@@ -20,7 +20,7 @@ if TYPE_CHECKING:
 
 __all__ = ["Run", "read_run", "read_table_file"]
 
-_TABLES = ("objects", "channels", "parameters", "sensitivity")
+_TABLES = ("objects", "channels", "parameters", "scenarios", "sensitivity")
 
 
 @dataclass(frozen=True)
@@ -54,12 +54,19 @@ class Run:
         return _frame(self.table("parameters"))
 
     @cached_property
+    def scenarios(self) -> "DataFrame":
+        """A row per object and cooling scenario: weight, evidence, probability, mass and how far it moves."""
+        return _frame(self.table("scenarios"))
+
+    @cached_property
     def sensitivity(self) -> "DataFrame":
         """A row per object, reading of n or prior setting or scenario left out, and channel: its probability."""
         return _frame(self.table("sensitivity"))
 
     def table(self, name: str) -> "Table":
-        """Return a table with units: ``objects``, ``channels``, ``parameters``, ``sensitivity`` or the ``input``.
+        """Return a table with units.
+
+        One of ``objects``, ``channels``, ``parameters``, ``scenarios``, ``sensitivity`` and the ``input``.
 
         Raises
         ------
@@ -71,6 +78,12 @@ class Run:
         if name not in (*_TABLES, "input"):
             raise UnknownNameError("table", name, (*_TABLES, "input"))
         return read_table_file(self.path / (INPUT_NAME if name == "input" else f"{name}.ecsv"))
+
+    def compare(self, first: str, second: str) -> "DataFrame":
+        """Return Bayes factors of two channels for every object, see `decayinfer.results.compare.compare`."""
+        from decayinfer.results.compare import compare
+
+        return compare(self, first, second)
 
     def fit(self, name: str, scenario: str, channel: str) -> "ChannelFit":
         """Return one posterior run.

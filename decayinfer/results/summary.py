@@ -11,6 +11,7 @@ from decayinfer.catalog.pulsar import Pulsar
 from decayinfer.inference.outcome import PARAMETERS, ChannelFit, ObjectFit, Parameter, Status
 from decayinfer.results.average import Probabilities, channel_probabilities, mix_draws
 from decayinfer.results.flags import join_flags, warns
+from decayinfer.results.preference import Preference, best_scenario, mass_of, preferences, scenario_rows
 from decayinfer.results.sensitivity import Trial, sensitivity_rows, trials
 from decayinfer.results.trust import information, predictive_tail
 from decayinfer.results.verdict import Constraint, Interval, constraint, verdict
@@ -40,6 +41,7 @@ class ObjectRows:
     channels: tuple[Row, ...]
     parameters: tuple[Row, ...]
     sensitivity: tuple[Row, ...] = ()
+    scenarios: tuple[Row, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -60,7 +62,7 @@ def summarise(
     *,
     prior_odds: Mapping[str, float] | None = None,
 ) -> ObjectRows:
-    """Return the rows of one object in objects.ecsv, channels.ecsv and parameters.ecsv.
+    """Return the rows of one object in the tables of a run.
 
     Parameters
     ----------
@@ -83,11 +85,23 @@ def summarise(
     overall = _averaged_rows(fit.name, AVERAGED, probabilities, mixing, settings.seed)
     made = trials(fit, prior_odds)
     averaged = {row["parameter"]: row for row in overall}
+    mass = mass_of(probabilities, seed=settings.seed, name=fit.name)
+    preferred = preferences(fit, probabilities, mass, seed=settings.seed)
+    said = verdict(
+        probabilities,
+        _interval(averaged.get("mass"), ""),
+        _interval(averaged.get("mass"), "prior_"),
+        made,
+        preferred=preferred,
+        prior_shift=mass.prior_shift,
+    )
+    tail = _tail(pulsar, probabilities, settings)
     return ObjectRows(
-        objects=_object_row(pulsar, probabilities, averaged, made, _tail(pulsar, probabilities, settings)),
+        objects=_object_row(pulsar, probabilities, averaged, made[0], tail, best_scenario(preferred), said),
         channels=tuple(_channel_row(probabilities, k) for k in range(len(fit.fits))),
         parameters=(*rows, *overall),
         sensitivity=sensitivity_rows(fit, made),
+        scenarios=scenario_rows(fit.name, preferred),
     )
 
 
@@ -103,8 +117,10 @@ def _object_row(
     pulsar: Pulsar,
     probabilities: Probabilities,
     averaged: Mapping[str, Row],
-    made: Sequence[Trial],
+    default: Trial,
     tail: float,
+    preferred: Preference | None,
+    said: str,
 ) -> Row:
     channels = list(dict.fromkeys(fit.channel for fit in probabilities.fits))
     chances = {channel: probabilities.of_channel(channel) for channel in channels}
@@ -122,12 +138,14 @@ def _object_row(
         "best_probability": chances[best][0] if best else np.nan,
         "best_probability_err": chances[best][1] if best else np.nan,
         **{f"probability_{channel}": chances[channel][0] for channel in channels},
-        "probability_any_decay": made[0].decay()[0],
+        "probability_any_decay": default.decay()[0],
         "predictive_p": tail,
+        "best_scenario": preferred.scenario if preferred else "",
+        "best_scenario_probability": preferred.probability if preferred else np.nan,
         **_named(mass, "mass_"),
         **_named(mass_prior, "mass_prior_"),
         **_named(phonon_time, "phonon_time_"),
-        "verdict": verdict(probabilities, mass, mass_prior, made),
+        "verdict": said,
         "flags": join_flags(_object_flags(pulsar, probabilities, constraint(mass, mass_prior))),
     }
 

@@ -25,6 +25,7 @@ if TYPE_CHECKING:
 __all__ = [
     "CHANNEL_COLUMNS",
     "PARAMETER_COLUMNS",
+    "SCENARIO_COLUMNS",
     "SENSITIVITY_COLUMNS",
     "Column",
     "any_to_ecsv",
@@ -58,6 +59,11 @@ class Column:
     description: str
     unit: str = ""
     kind: type = float
+
+
+def _interval_columns(name: str, what: str, unit: str) -> tuple[Column, ...]:
+    levels = (("q05", "5 % quantile"), ("q50", "median"), ("q95", "95 % quantile"))
+    return tuple(Column(f"{name}_{key}", f"{level} of the {what}", unit) for key, level in levels)
 
 
 _LABELS = (
@@ -117,6 +123,24 @@ SENSITIVITY_COLUMNS = (
     Column("ln_evidence_err", "standard error of ln_evidence"),
 )
 
+#: Columns of scenarios.ecsv.
+SCENARIO_COLUMNS = (
+    Column("object", "name of the object", kind=str),
+    Column("scenario", "cooling scenario", kind=str),
+    Column("weight", "stated prior weight of the scenario"),
+    Column("ln_evidence", "ln p(n | P, Pdot, scenario), averaged over channels by their prior odds"),
+    Column("ln_evidence_err", "standard error of ln_evidence"),
+    Column("probability", "posterior probability of the scenario, channels summed"),
+    *_interval_columns("mass", "mass under this scenario, averaged over channels", "Msun"),
+    *_interval_columns("mass_prior", "mass given P and Pdot but not n, under this scenario", "Msun"),
+    Column(
+        "mass_shift", "median mass less that averaged over scenarios, in standard deviations of the average"
+    ),
+    Column("prior_shift", "median mass less that of its prior, in prior standard deviations"),
+    Column("probability_err", "Monte Carlo standard error of probability"),
+    Column("failed", "channels that failed under this scenario, and are left out", kind=int),
+)
+
 
 def object_columns(channels: Iterable[str]) -> tuple[Column, ...]:
     """Return the columns of objects.ecsv for the channels of a run."""
@@ -133,17 +157,14 @@ def object_columns(channels: Iterable[str]) -> tuple[Column, ...]:
         *(Column(f"probability_{c}", f"probability of {c}, over all scenarios") for c in channels),
         Column("probability_any_decay", "probability of all decay channels together"),
         Column("predictive_p", "two-sided tail probability of the observed n under the averaged posterior"),
+        Column("best_scenario", "most probable cooling scenario", kind=str),
+        Column("best_scenario_probability", "probability of the most probable scenario, over all channels"),
         *_interval_columns("mass", "mass, averaged over channels and scenarios", "Msun"),
         *_interval_columns("mass_prior", "mass given P and Pdot but not n", "Msun"),
         *_interval_columns("phonon_time", "phonon time at 1e8 K, averaged where phonons act", "yr"),
         Column("verdict", "the answer in plain words", kind=str),
         Column("flags", "flags, separated by commas", kind=str),
     )
-
-
-def _interval_columns(name: str, what: str, unit: str) -> tuple[Column, ...]:
-    levels = (("q05", "5 % quantile"), ("q50", "median"), ("q95", "95 % quantile"))
-    return tuple(Column(f"{name}_{key}", f"{level} of the {what}", unit) for key, level in levels)
 
 
 def to_table(rows: Sequence[dict[str, Any]], columns: Sequence[Column]) -> "Table":
@@ -240,7 +261,7 @@ def save_table(table: "Table", path: Path) -> None:
 
 
 def write_tables(folder: Path, rows: Sequence["ObjectRows"], channels: Sequence[str]) -> None:
-    """Write objects.ecsv, channels.ecsv, parameters.ecsv and sensitivity.ecsv into a run folder.
+    """Write the tables into a run folder, objects.ecsv last.
 
     Raises
     ------
@@ -250,6 +271,8 @@ def write_tables(folder: Path, rows: Sequence["ObjectRows"], channels: Sequence[
     channel_rows = [row for each in rows for row in each.channels]
     parameter_rows = [row for each in rows for row in each.parameters]
     sensitivity_rows = [row for each in rows for row in each.sensitivity]
+    scenario_rows = [row for each in rows for row in each.scenarios]
+    write_whole(folder / "scenarios.ecsv", to_ecsv(to_table(scenario_rows, SCENARIO_COLUMNS)))
     write_whole(folder / "sensitivity.ecsv", to_ecsv(to_table(sensitivity_rows, SENSITIVITY_COLUMNS)))
     write_whole(folder / "parameters.ecsv", to_ecsv(to_table(parameter_rows, PARAMETER_COLUMNS)))
     write_whole(folder / "channels.ecsv", to_ecsv(to_table(channel_rows, CHANNEL_COLUMNS)))

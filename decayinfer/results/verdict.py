@@ -9,6 +9,7 @@ import numpy as np
 from decayinfer.channels.registry import load_channel
 from decayinfer.inference.outcome import ChannelFit, Status
 from decayinfer.results.average import Probabilities
+from decayinfer.results.preference import Preference
 from decayinfer.results.sensitivity import Trial
 
 __all__ = ["Constraint", "Interval", "constraint", "verdict"]
@@ -26,6 +27,12 @@ MOVED = 0.1
 #: Odds below which no channel is called ahead (the lowest step of the scale in Kass & Raftery 1995,
 #: J. Am. Stat. Assoc. 90, 773; from memory).
 CLOSE_ODDS = 3.0
+
+#: Shift of the median mass, in standard deviations, from which a verdict names it.
+NOTABLE = 0.5
+
+#: Scenarios less probable than this do not count when a verdict says how far the mass moves between them.
+MATTERS = 0.01
 
 
 @dataclass(frozen=True)
@@ -66,10 +73,16 @@ def constraint(posterior: Interval, prior: Interval) -> Constraint:
 
 
 def verdict(
-    probabilities: Probabilities, mass: Interval, mass_prior: Interval, made: Sequence[Trial] = ()
+    probabilities: Probabilities,
+    mass: Interval,
+    mass_prior: Interval,
+    made: Sequence[Trial] = (),
+    *,
+    preferred: Sequence[Preference] = (),
+    prior_shift: float = np.nan,
 ) -> str:
-    """Say in plain words which channel leads, by what odds, whether decay holds however n is read, and what is learnt
-    of the mass.
+    """Say in plain words which channel leads, by what odds, whether decay holds however n is read, what is learnt of
+    the mass, and how far that hangs on the cooling scenario.
 
     Parameters
     ----------
@@ -79,6 +92,10 @@ def verdict(
         Averaged posterior of the mass, and its prior given P and Pdot [Msun].
     made : sequence of Trial
         The same under other readings of n, priors and scenarios, the default first.
+    preferred : sequence of Preference
+        The cooling scenarios.
+    prior_shift : float
+        How far the median mass left that of its prior, in prior standard deviations.
 
     Returns
     -------
@@ -94,6 +111,9 @@ def verdict(
         _assumption_clause(made),
         _failed_clause(probabilities.fits),
         _mass_clause(mass, mass_prior),
+        _prior_clause(prior_shift),
+        _scenario_clause(preferred),
+        _moving_clause(preferred),
     ]
     return "; ".join(clause for clause in clauses if clause)
 
@@ -194,3 +214,37 @@ def _mass_clause(mass: Interval, prior: Interval) -> str:
     verb = "constrains the mass to" if kind is Constraint.STRONG else "narrows the mass a little, to"
     share = 100 * mass.width / prior.width
     return f"the index {verb} {mass.q05:.2f}-{mass.q95:.2f} Msun ({share:.0f} % of the prior's width)"
+
+
+def _prior_clause(shift: float) -> str:
+    if not abs(shift) >= NOTABLE:
+        return ""
+    side = "above" if shift > 0 else "below"
+    return f"the median mass lies {abs(shift):.1f} prior standard deviations {side} that of its prior"
+
+
+def _scenario_clause(preferred: Sequence[Preference]) -> str:
+    """Name the cooling scenario that leads, unless it is too close to call."""
+    ranked = sorted(
+        (each for each in preferred if each.probability > 0.0), key=lambda each: -each.probability
+    )
+    uneven = len({each.failed for each in ranked}) > 1  # a failed run counts against its scenario
+    if len(ranked) < 2 or uneven or ranked[0].probability < CLOSE_ODDS * ranked[1].probability:
+        return ""
+    best, other = ranked[:2]
+    odds = _odds(best.probability / other.probability)
+    return f"cooling scenario {best.scenario} preferred ({best.probability:.2f}), odds {odds} over {other.scenario}"
+
+
+def _moving_clause(preferred: Sequence[Preference]) -> str:
+    """Say how far the mass moves between cooling scenarios, where that is notable."""
+    moved = [each for each in preferred if each.probability >= MATTERS and np.isfinite(each.mass_shift)]
+    if len(moved) < 2:
+        return ""
+    low, high = (f(moved, key=lambda each: each.mass_shift) for f in (min, max))
+    if not high.mass_shift - low.mass_shift >= NOTABLE:
+        return ""
+    return (
+        f"the mass moves by {high.mass_shift - low.mass_shift:.1f} standard deviations between cooling scenarios "
+        f"(median {low.mass.median:.2f} Msun under {low.scenario}, {high.mass.median:.2f} under {high.scenario})"
+    )

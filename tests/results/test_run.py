@@ -18,7 +18,7 @@ from decayinfer.results.lock import run_lock
 from decayinfer.results.read import read_run
 from decayinfer.results.run import resolve_settings, run_fit
 
-TABLES = ("objects.ecsv", "channels.ecsv", "parameters.ecsv", "sensitivity.ecsv")
+TABLES = ("objects.ecsv", "channels.ecsv", "parameters.ecsv", "scenarios.ecsv", "sensitivity.ecsv")
 
 
 def table_bytes(folder):
