@@ -34,6 +34,15 @@ def test_check_shows_what_follows_from_the_table(run, table):
     assert "1 objects can be fitted, 0 rows set aside" in result.stdout
 
 
+def test_check_shows_what_else_is_known(run, table):
+    head = "name,period,period_derivative,braking_index,braking_index_err,age,age_err,data_span"
+    result = run("check", table("A,0.2,5e-14,20,1,3e4,2e3,22", "B,0.2,5e-14,20,1,x,,", head=head))
+    assert result.exit_code == 0  # a bad age costs no row
+    assert "age 30000 ± 2000 yr; data span 22 yr" in result.stdout
+    assert "row 2 (B), column age: must be a finite number, positive, to be used, got x; remedy" in result.stdout
+    assert "also known" not in run("check", table(GOOD)).stdout
+
+
 def test_check_reports_rows_set_aside(run, table):
     result = run("check", table(GOOD, BAD))
     assert result.exit_code == 1

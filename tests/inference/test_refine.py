@@ -1,7 +1,9 @@
 """Further measurements on top of a sampled density: against quadrature, against brute force, and contradictions."""
 
+import runpy
 from dataclasses import replace
 from functools import cache
+from pathlib import Path
 from types import SimpleNamespace
 
 import numpy as np
@@ -10,11 +12,14 @@ from scipy import stats
 
 from decayinfer.channels.registry import load_channel
 from decayinfer.cooling.constants import STEFAN_BOLTZMANN
+from decayinfer.cooling.registry import load_scenario
 from decayinfer.errors import SamplingError
 from decayinfer.inference.annealing import sound
 from decayinfer.inference.density import evaluate
-from decayinfer.inference.explore import Exploration, Quality
+from decayinfer.inference.explore import Exploration, Quality, explore
 from decayinfer.inference.importance import Weighted, importance_sample
+from decayinfer.inference.priors import Priors
+from decayinfer.inference.problem import make_problem
 from decayinfer.inference.refine import (
     DISAGREE,
     contradiction,
@@ -24,6 +29,7 @@ from decayinfer.inference.refine import (
     refine_run,
 )
 from decayinfer.inference.report import parameters
+from decayinfer.inference.settings import FitSettings
 from decayinfer.inference.state import envelope_of, ln_measured, state_of
 from decayinfer.measurements import Age, Obliquity, State, SurfaceTemperature
 
@@ -289,3 +295,30 @@ def test_states_are_those_of_the_reported_parameters(tools, wren):
     for name in ("age", "mass", "crust_temperature", "braking_index"):
         np.testing.assert_array_equal(getattr(state, name), reported[name])
     np.testing.assert_array_equal(ln_density, evaluate(points, wren.problem).ln_density(wren.problem))
+
+
+@pytest.mark.slow
+def test_the_documented_example():
+    """examples/age_and_temperature.py: age, mass and phonon time tighten to less than half; a wrong age contradicts."""
+    path = Path(__file__).parents[2] / "examples" / "age_and_temperature.py"
+    example = runpy.run_path(str(path), run_name="example")
+    channel, scenario = load_channel(example["CHANNEL"]), load_scenario(example["SCENARIO"])
+    problem = make_problem(example["BARE"], channel, scenario, Priors())
+    target = decay_target(problem, channel, scenario)
+    run = explore(problem, FitSettings(), np.random.SeedSequence(1))
+
+    def intervals(exploration):
+        points = exploration.points.reshape(-1, exploration.points.shape[-1])
+        known = parameters(evaluate(points, problem), problem, channel)
+        return {name: np.quantile(known[name], [0.05, 0.95]) for name in ("age", "mass", "phonon_time")}
+
+    known, tails = refine_run(
+        run, target, problem.active, example["KNOWN"].measurements, np.random.default_rng(2)
+    )
+    assert run.converged
+    assert known.converged
+    assert min(tails.values()) > 0.05
+    before, after = intervals(run), intervals(known)
+    for name in before:
+        assert np.ptp(after[name]) < 0.5 * np.ptp(before[name]), name
+    assert contradictions(target, run.weighted, example["TOO_OLD"].measurements)["age"] < DISAGREE
