@@ -5,7 +5,8 @@ throughout.
 """
 
 import json
-from dataclasses import dataclass
+from contextlib import suppress
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -41,6 +42,7 @@ _INFORMED = (
     400.0  # prior draws that a likelihood leaves effective, below which the index becomes a coordinate
 )
 _PINNED_SD = 1.5  # of the first proposal in that coordinate
+_CROWDED = 0.05  # share of the prior that counts as crowding
 _MINOR = 0.02  # error of the evidence from what pinning does not reach that is left alone
 _NOISY = 0.05  # error of a ln evidence that is flagged
 
@@ -152,12 +154,12 @@ def integrate_posterior(problem: RivalProblem, prior: Weighted, rng: np.random.G
     SamplingError
         If the density vanishes wherever it is tried.
     """
-    density = _Density(problem, with_index=True)
     if not _informs_little(problem, prior):
-        found = _in_parts(density, Pinned.INDEX, rng)
+        apart = replace(problem, least_excess=_least_excess(problem, prior))
+        found = _in_parts(_Density(apart, with_index=True), Pinned.INDEX, rng)
         if sound(found):
             return found
-    return _broad(density, rng)
+    return _broad(_Density(problem, with_index=True), rng)
 
 
 @dataclass(frozen=True)
@@ -203,8 +205,16 @@ def _in_parts(density: _Density, what: Pinned, rng: np.random.Generator) -> Weig
         return reached
     share = np.exp(rest.ln_evidence - np.logaddexp(rest.ln_evidence, reached.ln_evidence))
     if share * rest.ln_evidence_err > _MINOR:
-        rest = anneal(lambda z: density.rest(z, what), start, rng)
+        with suppress(SamplingError):  # so little that new points miss it: the few there are must do
+            rest = anneal(lambda z: density.rest(z, what), start, rng)
     return _together(reached, rest)
+
+
+def _least_excess(problem: RivalProblem, prior: Weighted) -> float:
+    """A tenth of the error where the prior crowds the index within that of 3, else nothing."""
+    edge = 0.05 * (problem.index[1] + problem.index[2])
+    excess = np.abs(evaluate_rival(prior.points, problem).response.braking_index - 3.0)
+    return edge if prior.weights[excess < edge].sum() > _CROWDED else 0.0
 
 
 def _informs_little(problem: RivalProblem, prior: Weighted) -> bool:

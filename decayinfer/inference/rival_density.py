@@ -60,6 +60,9 @@ class RivalProblem:
         Observed n or its limit, error below, error above, and 1 for a limit.
     pinned : Pinned
         What the rival's first coordinate is replaced by.
+    least_excess : float
+        Size of n - 3 below which an index is not pinned. A rival that mostly adds next to nothing crowds the index at
+        3, where the slope of the pinned coordinate grows without bound and the likelihood is flat.
     """
 
     pulsar: Pulsar
@@ -68,6 +71,7 @@ class RivalProblem:
     priors: Priors
     index: tuple[float, float, float, float]
     pinned: Pinned = Pinned.NOTHING
+    least_excess: float = 0.0
 
     @property
     def size(self) -> int:
@@ -113,12 +117,12 @@ def evaluate_rival(points: Array, problem: RivalProblem) -> Evaluated:
 def pinnable(e: Evaluated, problem: RivalProblem, what: Pinned) -> NDArray[np.bool_]:
     """Tell which points a pinned coordinate reaches: those that pinning their own value leads back to, (n,).
 
-    Values too near zero are left out: the likelihood is flat there and the slope of the pinned coordinate singular.
+    Values too near zero are left out, see `RivalProblem.least_excess`; so are ratios near one.
     """
     own = e.coordinates[:, len(SHARED) :].T
     with np.errstate(all="ignore"):
         if what is Pinned.INDEX:
-            value, least = e.response.braking_index - 3.0, 0.05 * (problem.index[1] + problem.index[2])
+            value, least = e.response.braking_index - 3.0, problem.least_excess
         else:
             value, least = np.log(e.response.derivative_ratio), _LEAST_LN_RATIO
         back, ln_slope = _pin(value, own, e.spin, problem.rival, what)

@@ -1,9 +1,9 @@
 """Each rival against plain Monte Carlo from birth, by forward code of this file alone.
 
 Stars are drawn from the priors and followed to today: those that land in a cell around an object's ln P and ln Pdot
-give the density there, and the mean likelihood of n among them the evidence of n. Orbits solve Kepler's equation by Newton's
-steps and differentiate positions; alignment comes from a table of integrated torque equations; nothing is shared with
-the package but constants, scenarios and the likelihood of n.
+give the density there, and the mean likelihood of n among them the evidence of n. Orbits solve Kepler's equation by
+Newton's steps and differentiate positions; alignment comes from a table of integrated torque equations; nothing is
+shared with the package but constants, scenarios and the likelihood of n.
 """
 
 from dataclasses import replace
