@@ -1,8 +1,8 @@
 """Fit one object: every channel under every cooling scenario, each with posterior, prior and evidence."""
 
 import json
-from collections.abc import Callable
-from dataclasses import replace
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -12,6 +12,7 @@ from decayinfer.channels.base import Channel
 from decayinfer.channels.registry import channel_names, load_channel
 from decayinfer.channels.rival import Rival
 from decayinfer.cooling.registry import choose_scenarios, load_scenario
+from decayinfer.cooling.scenario import Scenario
 from decayinfer.errors import SamplingError
 from decayinfer.inference.coordinates import ln_index_excess, ln_prior
 from decayinfer.inference.density import Evaluation, evaluate
@@ -21,6 +22,7 @@ from decayinfer.inference.outcome import ChannelFit, ObjectFit, Status
 from decayinfer.inference.priors import Priors
 from decayinfer.inference.problem import Problem, make_problem, with_priors
 from decayinfer.inference.reach import out_of_reach
+from decayinfer.inference.refine import DISAGREE, decay_target, refine_run
 from decayinfer.inference.report import data_tree
 from decayinfer.inference.rival import fit_rival
 from decayinfer.inference.seeds import named_seeds
@@ -35,6 +37,7 @@ from decayinfer.inference.variants import (
     reweighed,
     stretched,
 )
+from decayinfer.measurements import Measurement
 
 __all__ = ["fit_channel", "fit_object"]
 
@@ -112,7 +115,7 @@ def fit_channel(pulsar: Pulsar, channel: str, scenario: str, settings: FitSettin
         if isinstance(explanation, Rival):
             return fit_rival(pulsar, explanation, star, settings, seeds)
         problem = make_problem(pulsar, explanation, star, settings.priors)
-        return _fit(blank, pulsar, explanation, problem, seeds, settings)
+        return _fit(blank, pulsar, explanation, star, problem, seeds, settings)
     except SamplingError as error:
         return replace(blank, reason=str(error), flags=("failed",))
 
@@ -121,12 +124,15 @@ def _fit(
     blank: ChannelFit,
     pulsar: Pulsar,
     channel: Channel,
+    scenario: Scenario,
     problem: Problem,
     seeds: np.random.SeedSequence,
     settings: FitSettings,
 ) -> ChannelFit:
     without, within = seeds.spawn(2)
-    prior = survey(problem.without_index(), settings, without)
+    refined = _Refiner(channel, scenario, pulsar.measurements, np.random.default_rng(seeds.spawn(1)[0]))
+    found = survey(problem.without_index(), settings, without)
+    prior, tails = refined(found, problem.without_index())
     attributes = {
         "object": pulsar.name, "scenario": blank.scenario, "channel": channel.name,
         "seed": settings.seed, "settings": json.dumps(settings.as_dict()),
@@ -141,8 +147,8 @@ def _fit(
             variants=_noise_alone(pulsar, problem, prior.weighted, settings.priors),
         )  # fmt: skip
     if channel.decays:
-        wider = rewarp(prior.points.reshape(-1, prior.points.shape[-1]), problem.without_index(), problem)
-        posterior = explore(problem, settings, within, wider=wider)
+        wider = rewarp(found.points.reshape(-1, found.points.shape[-1]), problem.without_index(), problem)
+        posterior, tails = refined(explore(problem, settings, within, wider=wider), problem)
         joint, joint_err = posterior.weighted.ln_evidence, posterior.weighted.ln_evidence_err
         conditional = joint - prior.weighted.ln_evidence
         conditional_err = float(np.hypot(joint_err, prior.weighted.ln_evidence_err))
@@ -170,10 +176,28 @@ def _fit(
         r_hat_max=max(prior.quality.r_hat, posterior.quality.r_hat),
         divergences=int(posterior.diverging.sum()),
         gradients=gradients,
-        flags=_flags(posterior, converged),
+        flags=_flags(posterior, converged) + (("measurements-disagree",) if _disagree(tails) else ()),
         variants=variants,
         draws=data_tree(problem, channel, prior, posterior, attributes),
     )
+
+
+@dataclass(frozen=True)
+class _Refiner:
+    """Multiplies densities by the likelihood of what was measured beside P, Pdot and n."""
+
+    channel: Channel
+    scenario: Scenario
+    measurements: tuple[Measurement, ...]
+    rng: np.random.Generator
+
+    def __call__(self, run: Exploration, problem: Problem) -> tuple[Exploration, dict[str, float]]:
+        target = decay_target(problem, self.channel, self.scenario)
+        return refine_run(run, target, problem.active, self.measurements, self.rng)
+
+
+def _disagree(tails: Mapping[str, float]) -> bool:
+    return any(tail < DISAGREE for tail in tails.values())
 
 
 def _variants(

@@ -74,6 +74,11 @@ def ln_reading(reading: str, index: Array, measured: Index, pulsar: Pulsar, prio
     priors : Priors
         Give the scale of the excess scatter.
     """
+    with np.errstate(all="ignore"):  # far points overflow, and weigh nothing
+        return _ln_reading(reading, index, measured, pulsar, priors)
+
+
+def _ln_reading(reading: str, index: Array, measured: Index, pulsar: Pulsar, priors: Priors) -> Array:
     observed, minus, plus, limit = measured
     if reading != "with-noise":
         scatter = priors.scatter_sd if reading == "scattered" else 0.0
@@ -118,7 +123,8 @@ def read_otherwise(
         broad = Weighted(
             before.points, before.ln_weights + ln_reading(reading, index_before, measured, pulsar, priors)
         )
-        change = ln_reading(reading, index_after, measured, pulsar, priors) - default
+        with np.errstate(invalid="ignore"):  # minus infinity less minus infinity, taken out below
+            change = ln_reading(reading, index_after, measured, pulsar, priors) - default
         narrow = Weighted(after.points, after.ln_weights + np.where(np.isfinite(default), change, -np.inf))
         # a reading as wide as the prior is met by points of the prior, a narrow one by those of the posterior
         found[reading] = _conditional(max((broad, narrow), key=_size), before)
