@@ -39,7 +39,9 @@ def test_check_shows_what_else_is_known(run, table):
     result = run("check", table("A,0.2,5e-14,20,1,3e4,2e3,22", "B,0.2,5e-14,20,1,x,,", head=head))
     assert result.exit_code == 0  # a bad age costs no row
     assert "age 30000 ± 2000 yr; data span 22 yr" in result.stdout
-    assert "row 2 (B), column age: must be a finite number, positive, to be used, got x; remedy" in result.stdout
+    assert (
+        "row 2 (B), column age: must be a finite number, positive, to be used, got x; remedy" in result.stdout
+    )
     assert "also known" not in run("check", table(GOOD)).stdout
 
 
