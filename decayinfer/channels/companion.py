@@ -1,11 +1,11 @@
 """A wide companion whose pull changes the derivatives of the spin of a constant dipole.
 
 Lognormal companion mass; orbital period log-uniform (Oepik's law, from memory) up to the widest, from the shortest
-whose turn at its present rate takes longer than the data span, since a faster one would have been seen as an orbit; thermal
-eccentricities, f(e) = 2e (Jeans 1919, MNRAS 79, 408, from memory), for orbits that encounters or a kick have shaken;
-any moment, argument of periastron and direction alike. An argument of periastron half a turn further changes the sign
-of the pull and nothing else, so the sign of the first coordinate chooses between the two and its size is the period: the
-index is then nearly a monotone function of it.
+whose turn at its present rate takes longer than the data span, since a faster one would have been seen as an orbit;
+thermal eccentricities, f(e) = 2e (Jeans 1919, MNRAS 79, 408, from memory), for orbits that encounters or a kick have
+shaken; any moment, argument of periastron and direction alike. An argument of periastron half a turn further changes
+the sign of the pull and nothing else, so the sign of the first coordinate chooses between the two and its size is the
+period: the index is then nearly a monotone function of it.
 
 The prior odds of the channel are apart from all this, and equal to those of the others unless told otherwise, although
 few young pulsars have such a companion: multiply its probability by the odds you give it.
