@@ -17,7 +17,7 @@ __all__ = ["Engine", "NutsRun", "engine"]
 
 type Array = NDArray[np.float64]
 
-_DEPTH = 7  # doublings of a trajectory: most draws take three; what needs more is reported, not waited for
+_DEPTH = 6  # doublings of a trajectory: most draws take three; what needs more is reported, not waited for
 
 
 @dataclass(frozen=True)

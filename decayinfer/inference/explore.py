@@ -81,10 +81,10 @@ class Exploration:
 STANDARD = Standard()
 _PROPOSALS = 4000
 _CANDIDATES = 150
-_REFITS = 2
+_REFITS = (2, 2, 6)  # times the proposals
 _SHORT = 250  # draws and warm-up of chains that need only find the density
 _STRETCH = 4  # a retry has this many times the draws
-_LONG = 50  # gradients per draw beyond which the shape of the density is to blame, which no longer run cures
+_LONG = 35  # gradients per draw of short chains beyond which longer ones are not worth their time
 _FAR = 3.5  # standard deviations between chains and weights that mean a missed mode
 
 
@@ -111,7 +111,7 @@ def explore(
     """
     first, second = seeds.spawn(2)
     tried = _attempt(problem, settings, first, wider, longer=False)
-    if tried.converged or tried.gradients > _LONG * settings.chains * (settings.draws + settings.tune):
+    if tried.converged:
         return tried
     again = _attempt(problem, settings, second, wider, longer=True)
     gradients = tried.gradients + again.gradients
@@ -141,7 +141,7 @@ def survey(problem: Problem, settings: FitSettings, seeds: np.random.SeedSequenc
     wider = pilot(problem, rng)
     draws = run.points.reshape(-1, run.points.shape[-1])
     quality = _quality(problem, run)
-    for _ in range(1 + _REFITS):
+    for _ in range(1 + len(_REFITS)):
         weighted = importance_sample(problem, draws, _PROPOSALS, rng, wider=wider)
         if sound := _sound(weighted, 2.0 * STANDARD.ess):
             break
@@ -170,10 +170,10 @@ def _attempt(
     quality = _quality(problem, run)
     complete = _agree(problem, flat, weighted, quality)
     converged = quality.meets(STANDARD) and _sound(weighted, STANDARD.ess) and complete
-    for _ in range(0 if converged else _REFITS):
+    for more in () if converged else _REFITS:
         # refit to the weighted draws: the proposal inherits what made the chains mix poorly
         refitted = weighted.resample(flat.shape[0], rng)
-        weighted = importance_sample(problem, refitted, 2 * stretch * _PROPOSALS, rng, wider=wider)
+        weighted = importance_sample(problem, refitted, more * stretch * _PROPOSALS, rng, wider=wider)
         if quality.meets(STANDARD) and _sound(weighted, STANDARD.ess) and complete:
             converged = True
             break

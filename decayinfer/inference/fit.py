@@ -137,7 +137,7 @@ def _fit(
         "object": pulsar.name, "scenario": blank.scenario, "channel": channel.name,
         "seed": settings.seed, "settings": json.dumps(settings.as_dict()),
     }  # fmt: skip
-    reason = _out_of_reach(problem, channel, prior, settings)
+    reason = _out_of_reach(problem, channel, found, settings)
     if reason:
         draws = data_tree(problem, channel, prior, None, attributes)
         return replace(

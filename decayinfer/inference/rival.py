@@ -21,6 +21,7 @@ from decayinfer.inference.importance import Weighted
 from decayinfer.inference.outcome import ChannelFit, Status
 from decayinfer.inference.problem import make_problem
 from decayinfer.inference.reach import out_of_reach
+from decayinfer.inference.refine import DISAGREE, contradiction
 from decayinfer.inference.report import assemble
 from decayinfer.inference.rival_density import (
     SHARED,
@@ -33,6 +34,8 @@ from decayinfer.inference.rival_density import (
 )
 from decayinfer.inference.rival_variants import rival_variants
 from decayinfer.inference.settings import FitSettings
+from decayinfer.inference.state import ln_measured, state_of
+from decayinfer.measurements import State
 
 __all__ = ["fit_rival", "integrate_posterior", "integrate_prior", "make_rival_problem"]
 
@@ -113,10 +116,28 @@ def fit_rival(
             "weighted",
             *(() if good else ("poor-mixing",)),
             *(("evidence-noisy",) if err > _NOISY else ()),
+            *(("measurements-disagree",) if _disagree(problem, rng) else ()),
         ),
         draws=assemble(_groups(problem, settings, rng, prior, posterior), _names(rival), attributes),
         variants=rival_variants(problem, prior, posterior, rng, _integrate),
     )
+
+
+def _disagree(problem: RivalProblem, rng: np.random.Generator) -> bool:
+    """Whether the posterior without the further measurements all but excludes one of them."""
+    measurements = problem.pulsar.measurements
+    if not measurements:
+        return False
+    bare = replace(problem, pulsar=replace(problem.pulsar, measurements=()))
+    alone = _integrate(bare, rng)[1]
+    state = _state(evaluate_rival(alone.points, bare), bare)
+    return any(contradiction(alone, state, each) < DISAGREE for each in measurements)
+
+
+def _state(e: Evaluated, problem: RivalProblem) -> State:
+    with np.errstate(all="ignore"):  # far points overflow, and weigh nothing
+        known = rival_parameters(e.spin, e.response, problem.rival, problem.scenario)
+        return state_of(known, problem.scenario)
 
 
 def _integrate(problem: RivalProblem, rng: np.random.Generator) -> tuple[Weighted, Weighted]:
@@ -181,7 +202,9 @@ class _Density:
         return np.where(pinnable(e, self.problem, what), self._of(e) + e.ln_pinned, -np.inf)
 
     def _of(self, e: Evaluated) -> Array:
-        return e.ln_prior + e.ln_likelihood if self.with_index else e.ln_prior
+        total = e.ln_prior + e.ln_likelihood if self.with_index else e.ln_prior
+        measurements = self.problem.pulsar.measurements
+        return total + ln_measured(_state(e, self.problem), measurements) if measurements else total
 
 
 def _broad(density: _Density, rng: np.random.Generator) -> Weighted:

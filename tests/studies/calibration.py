@@ -32,7 +32,9 @@ from decayinfer.inference.seeds import named_seeds
 from decayinfer.inference.settings import FitSettings
 from decayinfer.physics.torque import characteristic_age
 
-PERIODS, AGES, INDICES = (0.01, 10.0), (1e3, 1e7), (-20.0, 300.0)  # selection on data [s], [yr]
+#: Selection on data [s], [yr]. In older stars the phonon rate is frozen out over many e-folds: fits take ten times as long
+#: and one in twenty does not converge, which its status says.
+PERIODS, AGES, INDICES = (0.01, 10.0), (1e3, 3e6), (-20.0, 300.0)
 ERRORS = (0.1, 3.0)  # log-uniform error of n, whatever n is
 RANKS = 50  # possible ranks: 49 thinned draws
 TAIL = 1e-3  # tail probability at which a rank test fails
@@ -163,6 +165,7 @@ def main():
             seed=asked.seed,
             ranks=RANKS,
             tail=TAIL,
+            ages=AGES,
         )
 
 
