@@ -19,7 +19,7 @@ from decayinfer.inference.problem import COORDINATES, make_problem
 from decayinfer.inference.report import parameters
 from decayinfer.inference.settings import FitSettings
 
-CHANNELS = channel_names()
+CHANNELS = channel_names(rivals=False)
 SCENARIOS = ("candle", "slow-candle")
 SHORT = FitSettings(draws=500, tune=300)
 

@@ -32,8 +32,8 @@ from decayinfer.inference.seeds import named_seeds
 from decayinfer.inference.settings import FitSettings
 from decayinfer.physics.torque import characteristic_age
 
-#: Selection on data [s], [yr]. In older stars the phonon rate is frozen out over many e-folds: fits take ten times as long
-#: and one in twenty does not converge, which its status says.
+#: Selection on data [s], [yr]. In older stars the phonon rate is frozen out over many e-folds: fits take ten times as
+#: long and one in twenty does not converge, which its status says.
 PERIODS, AGES, INDICES = (0.01, 10.0), (1e3, 3e6), (-20.0, 300.0)
 ERRORS = (0.1, 3.0)  # log-uniform error of n, whatever n is
 RANKS = 50  # possible ranks: 49 thinned draws
