@@ -17,6 +17,8 @@ class Channel:
         Registry name and a short description.
     phonon, impurity, hall : bool
         Whether electron-phonon scattering, electron-impurity scattering and Hall drift act.
+    secular : bool
+        Whether the index is one of the spin-down itself, which lasts, rather than of something laid over it.
     """
 
     name: str
@@ -24,6 +26,7 @@ class Channel:
     phonon: bool = False
     impurity: bool = False
     hall: bool = False
+    secular: bool = True
 
     @property
     def decays(self) -> bool:

@@ -153,6 +153,7 @@ CHANNELS = (
             "index_excess", "acceleration_share", "companion_mass", "orbital_period", "eccentricity", "inclination",
         ),
         coordinates=("orbital_period", "companion_mass", "eccentricity", "moment", "argument", "cosine"),
+        secular=False,
         low=-np.inf,
         high=np.inf,
         respond=_respond,

@@ -85,6 +85,7 @@ CHANNELS = (
             "recovery_time",
         ),
         coordinates=("step", "interval", "phase", "share", "decay_time"),
+        secular=False,
         low=3.0,
         high=np.inf,
         respond=_respond,

@@ -53,6 +53,7 @@ CHANNELS = (
         title="constant dipole with spin noise of either sign",
         own=("index_excess", "spin_noise_scale"),
         coordinates=("noise", "noise_scale"),
+        secular=False,
         low=-np.inf,
         high=np.inf,
         respond=_respond,

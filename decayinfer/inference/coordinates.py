@@ -17,6 +17,7 @@ from typing import Any, NamedTuple
 import numpy as np
 
 from decayinfer.cooling.form import MASS_RANGE, chebyshev
+from decayinfer.inference.priors import AGE_TAPER, LN_AGE_NORM
 from decayinfer.inference.problem import Problem
 from decayinfer.physics import structure, torque
 from decayinfer.physics.conduction import density_from_phonon_time, impurity_time
@@ -26,8 +27,6 @@ from decayinfer.physics.namespace import namespace
 __all__ = ["Physical", "history_inputs", "ln_index_excess", "ln_prior", "physical"]
 
 _LN_2PI = float(np.log(2.0 * np.pi))
-_AGE_EDGE = 8.0  # sharpness of the taper at the largest age: about 12 % wide, which a sampler can follow
-_LN_AGE_NORM = float(np.log(np.pi / _AGE_EDGE / np.sin(np.pi / _AGE_EDGE)))
 
 
 class Physical(NamedTuple):
@@ -161,7 +160,7 @@ def ln_prior(z: Any, history: Any, problem: Problem) -> Any:
     logp += flags[2] * (normal(p.ln_hall_factor, 2) + normal(p.ln_attractor_times, 3))
     logp += normal(p.ln_birth_field, 4) + normal(p.ln_birth_period, 5)
     logp += active[6] * normal(p.ln_umklapp, 6)
-    logp += -limits[3] - _LN_AGE_NORM - _softplus(xp, _AGE_EDGE * (p.ln_age - limits[3]))
+    logp += -limits[3] - LN_AGE_NORM - _softplus(xp, AGE_TAPER * (p.ln_age - limits[3]))
     logp += -history[1] - history[2] + problem.spin[2] - history[3] - _softplus(xp, z[4])
     logp += active[1] * (xp.log(problem.warp[1]) + xp.log(xp.cosh(problem.warp[2] * z[1])))
     for i in range(1, len(z)):

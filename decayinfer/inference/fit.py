@@ -1,7 +1,7 @@
 """Fit one object: every channel under every cooling scenario, each with posterior, prior and evidence."""
 
 import json
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -176,7 +176,8 @@ def _fit(
         r_hat_max=max(prior.quality.r_hat, posterior.quality.r_hat),
         divergences=int(posterior.diverging.sum()),
         gradients=gradients,
-        flags=_flags(posterior, converged) + (("measurements-disagree",) if _disagree(tails) else ()),
+        flags=_flags(posterior, converged, pulsar.measurements)
+        + (("measurements-disagree",) if _disagree(tails) else ()),
         variants=variants,
         draws=data_tree(problem, channel, prior, posterior, attributes),
     )
@@ -194,10 +195,6 @@ class _Refiner:
     def __call__(self, run: Exploration, problem: Problem) -> tuple[Exploration, dict[str, float]]:
         target = decay_target(problem, self.channel, self.scenario)
         return refine_run(run, target, problem.active, self.measurements, self.rng)
-
-
-def _disagree(tails: Mapping[str, float]) -> bool:
-    return any(tail < DISAGREE for tail in tails.values())
 
 
 def _variants(
@@ -269,8 +266,15 @@ def _shortcoming(prior: Exploration, posterior: Exploration) -> str:
     return "did not converge after a longer retry (" + "; ".join(parts) + "); raise --draws and --tune"
 
 
-def _flags(posterior: Exploration, converged: bool) -> tuple[str, ...]:
-    flags = []
+def _flags(
+    posterior: Exploration,
+    converged: bool,
+    measurements: Sequence[Measurement],
+    tails: Mapping[str, float],
+) -> tuple[str, ...]:
+    flags = ["weighted"] if measurements else []
+    if any(tail < DISAGREE for tail in tails.values()):
+        flags.append("measurements-disagree")
     if not converged:
         flags.append("poor-mixing")
     if posterior.topped_up:

@@ -19,7 +19,7 @@ from decayinfer.channels.base import Channel
 from decayinfer.cooling.form import MASS_RANGE
 from decayinfer.cooling.scenario import Scenario
 from decayinfer.inference.nodes import quadrature
-from decayinfer.inference.priors import Priors
+from decayinfer.inference.priors import AGE_TAPER, Priors
 from decayinfer.physics import torque
 from decayinfer.physics.conduction import density_from_phonon_time, impurity_time
 from decayinfer.physics.constants import YEAR_S
@@ -31,7 +31,6 @@ type Array = NDArray[np.float64]
 
 _QUADRATURE = quadrature(160, 9.0)  # 1e-5 for stars of 10 Myr under the sharpest freeze-out
 _FROM_BIRTH = _QUADRATURE.weights - _QUADRATURE.to_now
-_AGE_EDGE = 8.0
 
 
 class PriorDraws(NamedTuple):
@@ -142,6 +141,6 @@ def _draw_age(n: int, priors: Priors, rng: np.random.Generator) -> Array:
     accepted = np.empty(0)
     while accepted.size < n:
         age = priors.max_age * 5.0 * rng.random(6 * n + 10)
-        keep = rng.random(age.size) < 1.0 / (1.0 + (age / priors.max_age) ** _AGE_EDGE)
+        keep = rng.random(age.size) < 1.0 / (1.0 + (age / priors.max_age) ** AGE_TAPER)
         accepted = np.concatenate([accepted, age[keep]])
     return accepted[:n]

@@ -1,8 +1,9 @@
 """The measurement of n: quoted errors, symmetric or not, or an upper limit, with excess scatter.
 
 The quoted error is multiplied by a factor of at least one whose logarithm has a half-normal prior: quoted errors omit
-the scatter that spin noise adds to n. The factor is integrated out by quadrature, so it costs no
-coordinate. A limit is a censored measurement: the probability that the measured value fell below it.
+the scatter that spin noise adds to n. The factor is integrated out by quadrature, so it costs no coordinate; beyond
+about eight quoted errors, where nothing fits, the quadrature falls short of the far tail. A limit is a censored
+measurement: the probability that the measured value fell below it.
 """
 
 from typing import Any

@@ -25,7 +25,7 @@ from decayinfer.channels.rival import Response, Rival, Spin
 from decayinfer.cooling.form import MASS_RANGE
 from decayinfer.cooling.scenario import Scenario
 from decayinfer.inference.measurement import ln_index_likelihood
-from decayinfer.inference.priors import Priors
+from decayinfer.inference.priors import AGE_TAPER, LN_AGE_NORM, Priors
 from decayinfer.physics import torque
 from decayinfer.physics.constants import B_UNIT_G, T_UNIT_K
 
@@ -36,8 +36,6 @@ type Array = NDArray[np.float64]
 SHARED = ("mass", "birth_period")  #: coordinates that every rival has, before its own
 _LEAST_LN_RATIO = 0.2
 _LN_2PI = float(np.log(2.0 * np.pi))
-_AGE_EDGE = 8.0  # of the taper at the largest age, as in `decayinfer.inference.coordinates`
-_LN_AGE_NORM = float(np.log(np.pi / _AGE_EDGE / np.sin(np.pi / _AGE_EDGE)))
 
 
 class Pinned(Enum):
@@ -204,7 +202,7 @@ def _field_and_age(spin: Spin, response: Response, scenario: Scenario) -> tuple[
 
 def _ln_age_density(ln_age: Array, priors: Priors) -> Array:
     edge = np.log(priors.max_age)
-    density: Array = -edge - _LN_AGE_NORM - np.logaddexp(0.0, _AGE_EDGE * (ln_age - edge))
+    density: Array = -edge - LN_AGE_NORM - np.logaddexp(0.0, AGE_TAPER * (ln_age - edge))
     return density
 
 

@@ -106,6 +106,7 @@ def verdict(
         return _no_channel(probabilities.fits)
     clauses = [
         _channel_clause(probabilities),
+        _secular_clause(probabilities.fits),
         _rival_clause(probabilities),
         _reading_clause(made),
         _assumption_clause(made),
@@ -143,6 +144,13 @@ def _channel_clause(probabilities: Probabilities) -> str:
     ratio = p / others[0][0]
     close = ", too close to call" if ratio < CLOSE_ODDS else ""
     return f"{best} most probable ({p:.2f}), odds {_odds(ratio)} over {others[0][1]}{close}"
+
+
+def _secular_clause(fits: tuple[ChannelFit, ...]) -> str:
+    """Say when what reaches the index is laid over the spin-down, and no spin-down itself does."""
+    secular = [fit for fit in fits if load_channel(fit.channel).secular]
+    alone = secular and all(fit.status is Status.UNREACHABLE for fit in secular)
+    return "no secular channel reaches this index" if alone and len(secular) < len(fits) else ""
 
 
 def _rival_clause(probabilities: Probabilities) -> str:
