@@ -176,8 +176,7 @@ def _fit(
         r_hat_max=max(prior.quality.r_hat, posterior.quality.r_hat),
         divergences=int(posterior.diverging.sum()),
         gradients=gradients,
-        flags=_flags(posterior, converged, pulsar.measurements)
-        + (("measurements-disagree",) if _disagree(tails) else ()),
+        flags=_flags(posterior, converged, pulsar.measurements, tails),
         variants=variants,
         draws=data_tree(problem, channel, prior, posterior, attributes),
     )
