@@ -24,11 +24,12 @@ def calibration():
 
 @pytest.mark.slow
 def test_ranks_are_uniform_and_a_wrong_prior_shows(calibration):
+    # the first objects of the full run
     settings = FitSettings(draws=400, tune=250)
-    ranks, _, converged = calibration.calibrate("phonon", 60, 11, settings=settings)
+    ranks, _, converged = calibration.calibrate("phonon", 60, 2026, settings=settings)
     assert converged >= 57
     assert calibration.smallest(calibration.rank_tests(ranks)) > calibration.TAIL
-    wrong, _, _ = calibration.calibrate("phonon", 60, 11, settings=settings, priors=calibration.WRONG)
+    wrong, _, _ = calibration.calibrate("phonon", 60, 2026, settings=settings, priors=calibration.WRONG)
     assert calibration.smallest(calibration.rank_tests(wrong)) < calibration.TAIL
 
 
