@@ -1,0 +1,28 @@
+"""The arithmetic of tests/studies/recovery.py."""
+
+import importlib.util
+import sys
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+STUDIES = Path(__file__).parents[1] / "studies"
+
+
+@pytest.fixture(scope="module")
+def recovery():
+    spec = importlib.util.spec_from_file_location("recovery", STUDIES / "recovery.py")
+    module = importlib.util.module_from_spec(spec)
+    sys.modules["recovery"] = module
+    spec.loader.exec_module(module)
+    return module
+
+
+def test_probabilities_sum_to_one_and_leave_out_what_failed(recovery):
+    chances = recovery.probabilities({"a": -1.0, "b": float("nan"), "c": -np.inf, "d": -2.0})
+    assert set(chances) == {"a", "c", "d"}
+    assert sum(chances.values()) == pytest.approx(1.0)
+    assert chances["a"] / chances["d"] == pytest.approx(np.e)
+    tilted = recovery.probabilities({"a": -1.0, "d": -2.0}, {"d": 1.0})
+    assert tilted["a"] == pytest.approx(0.5)
