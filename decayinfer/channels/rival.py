@@ -116,6 +116,8 @@ class Rival(Channel):
         Names of its own coordinates, each standard normal a priori.
     low, high : float
         The indices that it can reach.
+    noisy : bool
+        Whether spin noise is in it already, so that no reading of n adds more.
     respond : callable
         ``respond(coordinates, spin)`` with coordinates (k, n) gives the `Response`.
     born : callable
@@ -132,6 +134,7 @@ class Rival(Channel):
     coordinates: tuple[str, ...]
     low: float
     high: float
+    noisy: bool = False
     respond: Callable[[Array, Spin], Response]
     born: Callable[[Birth, np.random.Generator], Born]
     pin: Callable[[Array, Array, Spin], tuple[Array, Array]] | None = None

@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from decayinfer.channels.rival import Birth, Born, Response, Rival, Spin, constant_born, constant_response
-from decayinfer.physics.spin_noise import NoiseScale, noise_scale
+from decayinfer.physics.spin_noise import known_scale
 
 __all__ = ["CHANNELS"]
 
@@ -21,11 +21,8 @@ def _ln_scale(coordinates: Array, spin: Spin) -> tuple[Array, Array]:
     """Log of the standard deviation of nuddot, and of the index."""
     nu = 1.0 / spin.period
     nudot = -spin.period_derivative / spin.period**2
-    scale = noise_scale(nu, nudot)
-    own = spin.fact("spin_noise_log10_scale")
-    if np.isfinite(own):
-        err = spin.fact("spin_noise_log10_scale_err")
-        scale = NoiseScale(own, err if np.isfinite(err) else spin.priors.spin_noise_own_log10_sd)
+    own, own_sd = (spin.fact(f"spin_noise_log10_scale{end}") for end in ("", "_err"))
+    scale = known_scale(nu, nudot, own, own_sd, spin.priors.spin_noise_own_log10_sd)
     ln_nuddot = _LN10 * (scale.log10 + scale.sd * coordinates[1])
     return ln_nuddot, ln_nuddot + np.log(nu / nudot**2)
 
@@ -56,6 +53,7 @@ CHANNELS = (
         secular=False,
         low=-np.inf,
         high=np.inf,
+        noisy=True,
         respond=_respond,
         born=_born,
         pin=_pin,

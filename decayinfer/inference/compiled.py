@@ -36,7 +36,7 @@ __all__ = [
 
 #: Modules that the density is made from; the digest of their text is part of the cache key.
 SOURCES = (
-    "cooling/form.py", "cooling/kernel.py", "inference/compiled.py", "inference/coordinates.py",
+    "cooling/form.py", "cooling/kernel.py", "inference/ages.py", "inference/compiled.py", "inference/coordinates.py",
     "inference/kernel.py", "inference/measurement.py", "inference/model.py", "inference/nodes.py",
     "inference/op.py", "inference/problem.py", "physics/conduction.py", "physics/constants.py",
     "physics/hall.py", "physics/lattice.py", "physics/namespace.py", "physics/structure.py", "physics/torque.py",
@@ -153,8 +153,8 @@ def identity_callback() -> Any:
 
 
 def _log_density(point: Any, numbers: Any) -> Any:
-    """Stand for the density in the callback's source; compiling the callback asks `_derive_density` for it."""
-    raise NotImplementedError
+    """Return log density and gradient; compiled code gets it through `_derive_density`, interpreted code as it is."""
+    return _derived()(point, numbers)
 
 
 @overload(_log_density)

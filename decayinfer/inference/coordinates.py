@@ -17,12 +17,12 @@ from typing import Any, NamedTuple
 import numpy as np
 
 from decayinfer.cooling.form import MASS_RANGE, chebyshev
-from decayinfer.inference.priors import AGE_TAPER, LN_AGE_NORM
+from decayinfer.inference.ages import ln_age_density
 from decayinfer.inference.problem import Problem
 from decayinfer.physics import structure, torque
 from decayinfer.physics.conduction import density_from_phonon_time, impurity_time
 from decayinfer.physics.hall import attractor_switch, hall_time
-from decayinfer.physics.namespace import namespace
+from decayinfer.physics.namespace import namespace, softplus
 
 __all__ = ["Physical", "history_inputs", "ln_index_excess", "ln_prior", "physical"]
 
@@ -49,10 +49,6 @@ class Physical(NamedTuple):
     share_hall: Any
 
 
-def _softplus(xp: Any, z: Any) -> Any:
-    return xp.maximum(z, 0.0) + xp.log1p(xp.exp(-xp.abs(z)))
-
-
 def _mass(xp: Any, logit: Any) -> Any:
     return MASS_RANGE[0] + (MASS_RANGE[1] - MASS_RANGE[0]) / (1.0 + xp.exp(-logit))
 
@@ -62,7 +58,7 @@ def ln_index_excess(z: Any, problem: Problem) -> Any:
     xp = namespace(z[0], problem.spin)
     centre, width, tail = problem.warp[0], problem.warp[1], problem.warp[2]
     # ln S(t) = -softplus(-4 ln(t_a/t)), see `decayinfer.physics.hall.attractor_switch`
-    return centre + width * xp.sinh(tail * z[1]) / tail - problem.shear * _softplus(xp, -4.0 * z[5])
+    return centre + width * xp.sinh(tail * z[1]) / tail - problem.shear * softplus(xp, -4.0 * z[5])
 
 
 def history_inputs(z: Any, problem: Problem) -> tuple[Any, ...]:
@@ -77,7 +73,7 @@ def history_inputs(z: Any, problem: Problem) -> tuple[Any, ...]:
     """
     xp = namespace(z[0], problem.spin)
     period_ratio = 1.0 / (1.0 + xp.exp(-z[4]))
-    ln_tau = problem.spin[2] - _softplus(xp, z[4]) + xp.log1p(period_ratio)
+    ln_tau = problem.spin[2] - softplus(xp, z[4]) + xp.log1p(period_ratio)
     ln_rate = ln_index_excess(z, problem) - np.log(4.0) - problem.spin[2]
     ln_umklapp = _chosen(problem.active[6], z[6], problem.normals[0][6])
     return ln_tau, ln_rate, z[2], z[3], z[5], _mass(xp, z[0]), ln_umklapp
@@ -128,7 +124,7 @@ def physical(z: Any, history: Any, problem: Problem) -> Physical:
         ln_hall_factor=ln_hall_time - ln_standard_hall,
         ln_attractor_times=z[5] + ln_age + ln_amplitude + ln_eta - ln_birth_ratio,
         ln_birth_field=ln_field - ln_birth_ratio,
-        ln_birth_period=problem.spin[0] - _softplus(xp, -z[4]),
+        ln_birth_period=problem.spin[0] - softplus(xp, -z[4]),
         ln_umklapp=_chosen(problem.active[6], z[6], problem.normals[0][6]),
         ln_age=ln_age,
         ln_field=ln_field,
@@ -154,14 +150,14 @@ def ln_prior(z: Any, history: Any, problem: Problem) -> Any:
         return -0.5 * ((value - means[i]) / sds[i]) ** 2 - xp.log(sds[i]) - 0.5 * _LN_2PI
 
     logp = -0.5 * ((p.mass - limits[0]) / limits[1]) ** 2 - xp.log(limits[1]) - 0.5 * _LN_2PI - limits[2]
-    logp += np.log(MASS_RANGE[1] - MASS_RANGE[0]) - _softplus(xp, z[0]) - _softplus(xp, -z[0])
+    logp += np.log(MASS_RANGE[1] - MASS_RANGE[0]) - softplus(xp, z[0]) - softplus(xp, -z[0])
     logp += active[1] * normal(p.ln_phonon_time, 0)
     logp += flags[1] * normal(p.ln_impurity_parameter, 1)
     logp += flags[2] * (normal(p.ln_hall_factor, 2) + normal(p.ln_attractor_times, 3))
     logp += normal(p.ln_birth_field, 4) + normal(p.ln_birth_period, 5)
     logp += active[6] * normal(p.ln_umklapp, 6)
-    logp += -limits[3] - LN_AGE_NORM - _softplus(xp, AGE_TAPER * (p.ln_age - limits[3]))
-    logp += -history[1] - history[2] + problem.spin[2] - history[3] - _softplus(xp, z[4])
+    logp += ln_age_density(p.ln_age, limits[3])
+    logp += -history[1] - history[2] + problem.spin[2] - history[3] - softplus(xp, z[4])
     logp += active[1] * (xp.log(problem.warp[1]) + xp.log(xp.cosh(problem.warp[2] * z[1])))
     for i in range(1, len(z)):
         logp += (1.0 - active[i]) * (-0.5 * z[i] ** 2 - 0.5 * _LN_2PI)

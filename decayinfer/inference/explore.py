@@ -13,7 +13,7 @@ from decayinfer.inference.pilot import disagreement, pilot
 from decayinfer.inference.problem import Problem
 from decayinfer.inference.settings import FitSettings
 
-__all__ = ["Exploration", "Quality", "Standard", "explore", "survey"]
+__all__ = ["Exploration", "Quality", "Standard", "drawn_by_weights", "explore", "survey"]
 
 type Array = NDArray[np.float64]
 
@@ -140,16 +140,16 @@ def survey(problem: Problem, settings: FitSettings, seeds: np.random.SeedSequenc
     run = _sample(problem, short, rng, longer=False)
     wider = pilot(problem, rng)
     draws = run.points.reshape(-1, run.points.shape[-1])
-    quality = _quality(problem, run)
-    for _ in range(1 + len(_REFITS)):
-        weighted = importance_sample(problem, draws, _PROPOSALS, rng, wider=wider)
+    quality = _quality(problem.active, run.points, run.diverging)
+    for more in (1, *_REFITS):
+        weighted = importance_sample(problem, draws, more * _PROPOSALS, rng, wider=wider)
         if sound := _sound(weighted, 2.0 * STANDARD.ess):
             break
         draws = weighted.resample(_PROPOSALS // 2, rng)
     good = sound and _agree(problem, run.points.reshape(-1, run.points.shape[-1]), weighted, quality)
     if not good and run.gradients <= _LONG * settings.chains * (short.draws + short.tune):
         return explore(problem, settings, second)
-    drawn = _topped_up(problem, settings, run, weighted, rng)
+    drawn = _topped_up(problem, settings, run, quality, weighted, rng)
     return replace(drawn, converged=drawn.converged and good)
 
 
@@ -167,18 +167,17 @@ def _attempt(
     flat = run.points.reshape(-1, run.points.shape[-1])
     wider = pilot(problem, rng) if wider is None else wider
     weighted = importance_sample(problem, flat, stretch * _PROPOSALS, rng, wider=wider)
-    quality = _quality(problem, run)
-    complete = _agree(problem, flat, weighted, quality)
-    converged = quality.meets(STANDARD) and _sound(weighted, STANDARD.ess) and complete
+    quality = _quality(problem.active, run.points, run.diverging)
+    mixed = quality.meets(STANDARD) and _agree(problem, flat, weighted, quality)
+    converged = mixed and _sound(weighted, STANDARD.ess)
     for more in () if converged else _REFITS:
         # refit to the weighted draws: the proposal inherits what made the chains mix poorly
         refitted = weighted.resample(flat.shape[0], rng)
         weighted = importance_sample(problem, refitted, more * stretch * _PROPOSALS, rng, wider=wider)
-        if quality.meets(STANDARD) and _sound(weighted, STANDARD.ess) and complete:
-            converged = True
+        if converged := mixed and _sound(weighted, STANDARD.ess):
             break
         if _sound(weighted, 2.0 * STANDARD.ess):
-            return _topped_up(problem, settings, run, weighted, rng)
+            return _topped_up(problem, settings, run, quality, weighted, rng)
     points, diverging = run.points[:, -settings.draws :], run.diverging[:, -settings.draws :]
     if longer and converged:
         points, diverging = run.points[:, stretch - 1 :: stretch], run.diverging[:, stretch - 1 :: stretch]
@@ -209,23 +208,49 @@ def _agree(problem: Problem, draws: Array, weighted: Weighted, quality: Quality)
 
 
 def _topped_up(
-    problem: Problem, settings: FitSettings, run: NutsRun, weighted: Weighted, rng: np.random.Generator
+    problem: Problem,
+    settings: FitSettings,
+    run: NutsRun,
+    quality: Quality,
+    weighted: Weighted,
+    rng: np.random.Generator,
 ) -> Exploration:
-    shape = (settings.chains, settings.draws, problem.active.size)
-    points = weighted.resample(settings.chains * settings.draws, rng).reshape(shape)
-    independent = NutsRun(points, np.zeros(shape[:2], dtype=bool), run.gradients, run.seconds)
-    found = _quality(problem, independent)
+    found = Exploration(
+        run.points, run.diverging, quality, weighted, run.gradients, converged=False, topped_up=True
+    )
+    return drawn_by_weights(found, weighted, problem.active, (settings.chains, settings.draws), rng)
+
+
+def drawn_by_weights(
+    run: Exploration, weighted: Weighted, active: Array, shape: tuple[int, int], rng: np.random.Generator
+) -> Exploration:
+    """Return an exploration whose draws are resampled from weights; whether those are sound is for the caller to say.
+
+    Parameters
+    ----------
+    run : Exploration
+        What the weights were found from.
+    weighted : Weighted
+        Weighted points of the density.
+    active : (8,) array
+        1 for each coordinate in use.
+    shape : (int, int)
+        Number of chains and draws.
+    rng : numpy.random.Generator
+        Source of randomness.
+    """
+    points = weighted.resample(shape[0] * shape[1], rng).reshape(*shape, active.size)
+    independent = np.zeros(shape, dtype=bool)
+    found, worth = _quality(active, points, independent), weighted.effective_size
     # resampled draws repeat: they are worth no more than the weights they came from
-    worth = weighted.effective_size
-    quality = Quality(min(found.ess_bulk, worth), min(found.ess_tail, worth), found.r_hat, 0, found.draws)
-    return Exploration(
-        points,
-        independent.diverging,
-        quality,
-        weighted,
-        run.gradients,
-        quality.meets(STANDARD),
-        topped_up=True,
+    quality = replace(found, ess_bulk=min(found.ess_bulk, worth), ess_tail=min(found.ess_tail, worth))
+    return replace(
+        run,
+        points=points,
+        diverging=independent,
+        quality=quality,
+        weighted=weighted,
+        converged=quality.meets(STANDARD),
     )
 
 
@@ -240,12 +265,12 @@ def _start(problem: Problem, rng: np.random.Generator) -> Array:
     return best
 
 
-def _quality(problem: Problem, run: NutsRun) -> Quality:
-    used = run.points[:, :, problem.active > 0.0]
+def _quality(active: Array, points: Array, diverging: NDArray[np.bool_]) -> Quality:
+    used = points[:, :, active > 0.0]
     return Quality(
         ess_bulk=float(np.min(bulk_ess(used))),
         ess_tail=float(np.min(tail_ess(used))),
         r_hat=float(np.max(r_hat(used))),
-        divergences=int(run.diverging.sum()),
-        draws=run.diverging.size,
+        divergences=int(diverging.sum()),
+        draws=diverging.size,
     )

@@ -18,8 +18,9 @@ from numpy.typing import NDArray
 from decayinfer.channels.base import Channel
 from decayinfer.cooling.form import MASS_RANGE
 from decayinfer.cooling.scenario import Scenario
+from decayinfer.inference.ages import AGE_TAPER
 from decayinfer.inference.nodes import quadrature
-from decayinfer.inference.priors import AGE_TAPER, Priors
+from decayinfer.inference.priors import Priors
 from decayinfer.physics import torque
 from decayinfer.physics.conduction import density_from_phonon_time, impurity_time
 from decayinfer.physics.constants import YEAR_S

@@ -9,14 +9,9 @@ from decayinfer.cooling.form import MASS_RANGE
 from decayinfer.errors import InputError
 from decayinfer.physics.lattice import FREEZE_OUT
 
-__all__ = ["AGE_TAPER", "LN_AGE_NORM", "PRIOR_FIELDS", "Priors"]
+__all__ = ["PRIOR_FIELDS", "Priors"]
 
 _LN10 = float(np.log(10.0))
-
-#: The age prior is flat with a taper 1/(1 + (t/T)^8) about the largest age T, soft enough for a sampler to follow.
-AGE_TAPER = 8.0
-#: ln of the integral of the taper over t/T.
-LN_AGE_NORM = float(np.log(np.pi / AGE_TAPER / np.sin(np.pi / AGE_TAPER)))
 _POSITIVE = ("mass_mean", "max_age", "companion_period_min", "companion_period_max")
 
 #: Columns of the array that `Priors.normals` returns.
@@ -58,7 +53,8 @@ class Priors:
         Scale of the half-normal prior on the logarithm of the factor, at least one, that multiplies the
         quoted error of n. Zero takes the error as quoted.
     max_age : float
-        Stars are born at a constant rate up to this age [yr], the end of the cooling fits.
+        Stars are born at a constant rate up to about this age [yr], the end of the cooling fits; the taper is that of
+        `decayinfer.inference.ages`.
     companion_mass_median, companion_mass_sd : float
         Mass of a wide companion [M_sun], from low-mass stars and white dwarfs to a few M_sun; a choice of ours.
     companion_period_min, companion_period_max : float

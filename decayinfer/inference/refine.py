@@ -17,8 +17,7 @@ from decayinfer.cooling.scenario import Scenario
 from decayinfer.errors import SamplingError
 from decayinfer.inference.annealing import anneal, sound
 from decayinfer.inference.density import evaluate
-from decayinfer.inference.diagnostics import bulk_ess, r_hat, tail_ess
-from decayinfer.inference.explore import Exploration, Quality
+from decayinfer.inference.explore import Exploration, drawn_by_weights
 from decayinfer.inference.importance import Weighted
 from decayinfer.inference.problem import Problem
 from decayinfer.inference.proposal import fit_mixture
@@ -133,25 +132,8 @@ def refine_run(
         return run, {}
     tails = contradictions(target, run.weighted, measurements)
     weighted = refine(target, active, run.weighted, measurements, rng)
-    shape = run.points.shape
-    points = weighted.resample(shape[0] * shape[1], rng).reshape(shape)
-    used, worth = points[:, :, active > 0.0], weighted.effective_size
-    quality = Quality(  # resampled draws repeat: they are worth no more than the weights they came from
-        ess_bulk=min(float(np.min(bulk_ess(used))), worth),
-        ess_tail=min(float(np.min(tail_ess(used))), worth),
-        r_hat=float(np.max(r_hat(used))),
-        divergences=0,
-        draws=shape[0] * shape[1],
-    )
-    refined = replace(
-        run,
-        points=points,
-        diverging=np.zeros(shape[:2], dtype=bool),
-        quality=quality,
-        weighted=weighted,
-        converged=run.converged and sound(weighted),
-    )
-    return refined, tails
+    drawn = drawn_by_weights(run, weighted, active, run.points.shape[:2], rng)
+    return replace(drawn, converged=run.converged and sound(weighted)), tails
 
 
 def contradiction(weighted: Weighted, state: State, measurement: Measurement) -> float:

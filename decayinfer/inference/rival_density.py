@@ -24,8 +24,9 @@ from decayinfer.catalog.pulsar import Pulsar
 from decayinfer.channels.rival import Response, Rival, Spin
 from decayinfer.cooling.form import MASS_RANGE
 from decayinfer.cooling.scenario import Scenario
+from decayinfer.inference.ages import ln_age_density
 from decayinfer.inference.measurement import ln_index_likelihood
-from decayinfer.inference.priors import AGE_TAPER, LN_AGE_NORM, Priors
+from decayinfer.inference.priors import Priors
 from decayinfer.physics import torque
 from decayinfer.physics.constants import B_UNIT_G, T_UNIT_K
 
@@ -166,7 +167,7 @@ def _evaluate(points: Array, problem: RivalProblem) -> Evaluated:
     mean, sd = priors.normals()[:, 4]
     ln_prior = -0.5 * np.sum(coordinates**2, axis=1) - 0.5 * problem.size * _LN_2PI + ln_cut
     ln_prior += -0.5 * ((ln_field - mean) / sd) ** 2 - np.log(sd) - 0.5 * _LN_2PI
-    ln_prior += ln_tau + _ln_age_density(ln_age, priors) + response.ln_jacobian - ln_ratio
+    ln_prior += ln_tau + ln_age_density(ln_age, np.log(priors.max_age)) + response.ln_jacobian - ln_ratio
     observed, minus, plus, limit = problem.index
     likelihood = ln_index_likelihood(observed, response.braking_index, minus, plus, limit, priors.scatter_sd)
     return Evaluated(coordinates, _finite(ln_prior), ln_pinned, _finite(likelihood), spin, response)
@@ -198,12 +199,6 @@ def _field_and_age(spin: Spin, response: Response, scenario: Scenario) -> tuple[
         ln_field = 0.5 * np.log(spin.period * derivative / constant)
         ln_age = np.log(torque.characteristic_age(spin.period, derivative) * response.age_ratio)
     return ln_field, ln_age
-
-
-def _ln_age_density(ln_age: Array, priors: Priors) -> Array:
-    edge = np.log(priors.max_age)
-    density: Array = -edge - LN_AGE_NORM - np.logaddexp(0.0, AGE_TAPER * (ln_age - edge))
-    return density
 
 
 def _excess(y: Array, problem: RivalProblem) -> tuple[Array, Array]:

@@ -15,8 +15,6 @@ __all__ = ["rival_variants"]
 #: Integrates a problem without and with n.
 type Integrate = Callable[[RivalProblem, np.random.Generator], tuple[Weighted, Weighted]]
 
-_NOISE = "spin-noise"
-
 
 def rival_variants(
     problem: RivalProblem,
@@ -44,7 +42,7 @@ def rival_variants(
         return {"with-noise": read_with_noise(before, index, star, priors)}
     after = posterior, evaluate_rival(posterior.points, problem).response.braking_index
     found = read_otherwise(before, after, index, star, priors)
-    if problem.rival.name == _NOISE:  # the noise is in it already
+    if problem.rival.noisy:
         found["with-noise"] = _conditional(prior, posterior)
     for name, factor in PRIOR_SETTINGS.items():
         # a rival's coordinates are images of its priors and its index may be pinned: integrating anew is simplest

@@ -24,7 +24,7 @@ from decayinfer.catalog.pulsar import Pulsar
 from decayinfer.inference.importance import Weighted
 from decayinfer.inference.measurement import ln_index_likelihood
 from decayinfer.inference.priors import Priors
-from decayinfer.physics.spin_noise import NoiseScale, noise_scale
+from decayinfer.physics.spin_noise import known_scale
 
 __all__ = [
     "PRIOR_SETTINGS",
@@ -83,9 +83,10 @@ def _ln_reading(reading: str, index: Array, measured: Index, pulsar: Pulsar, pri
     if reading != "with-noise":
         scatter = priors.scatter_sd if reading == "scattered" else 0.0
         return np.asarray(ln_index_likelihood(observed, index, minus, plus, limit, scatter))
-    scale = _own_noise(pulsar, priors)
-    to_index = pulsar.period**3 / pulsar.period_derivative**2  # n = nu nuddot/nudot^2
-    noise = to_index * np.exp(_LN10 * (scale.log10 + scale.sd * _NODES))
+    nu, nudot = 1.0 / pulsar.period, -pulsar.period_derivative / pulsar.period**2
+    own, own_sd = pulsar.spin_noise_log10_scale, pulsar.spin_noise_log10_scale_err
+    scale = known_scale(nu, nudot, own, own_sd, priors.spin_noise_own_log10_sd)
+    noise = nu / nudot**2 * np.exp(_LN10 * (scale.log10 + scale.sd * _NODES))
     gap = (index - observed)[:, None]
     total = np.hypot(np.where(gap > 0.0, plus, minus), noise)
     z = gap / total
@@ -145,14 +146,6 @@ def reweighed(prior: Weighted, posterior: Weighted, change_prior: Array, change_
     before = Weighted(prior.points, prior.ln_weights + change_prior)
     after = Weighted(posterior.points, posterior.ln_weights + change_posterior)
     return _conditional(after, before)
-
-
-def _own_noise(pulsar: Pulsar, priors: Priors) -> NoiseScale:
-    own = float(getattr(pulsar, "spin_noise_log10_scale", np.nan))
-    if np.isfinite(own):
-        err = float(getattr(pulsar, "spin_noise_log10_scale_err", np.nan))
-        return NoiseScale(own, err if np.isfinite(err) else priors.spin_noise_own_log10_sd)
-    return noise_scale(1.0 / pulsar.period, -pulsar.period_derivative / pulsar.period**2)
 
 
 def _size(weighted: Weighted) -> float:

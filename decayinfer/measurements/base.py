@@ -7,7 +7,7 @@ that what was measured fell on its side; an interval is a limit at each end.
 
 from abc import ABC, abstractmethod
 from dataclasses import dataclass, field
-from typing import ClassVar, NamedTuple
+from typing import Any, ClassVar, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,7 +15,7 @@ from scipy.special import log_ndtr, ndtr
 
 from decayinfer.errors import InputError
 
-__all__ = ["Measurement", "State"]
+__all__ = ["Measurement", "State", "two_piece_below"]
 
 type Array = NDArray[np.float64]
 
@@ -180,12 +180,8 @@ class Measurement(ABC):
         """Probabilities that a repetition lies below the value and above it, or on the right side of each limit."""
         if not np.isfinite(self.value):
             return [ndtr(sign * (x - edge) / width) for edge, width, sign in self._edges()]
-        # a measured value lies below the truth with the weight of the error above it, and the other way round
-        total = self.err_minus + self.err_plus
-        beyond = 2.0 * self.err_plus / total * ndtr((self.value - x) / self.err_plus)
-        short = 2.0 * self.err_minus / total * ndtr((x - self.value) / self.err_minus)
-        below = np.where(x > self.value, beyond, 1.0 - short)
-        return [below, np.where(x > self.value, 1.0 - beyond, short)]
+        below = two_piece_below(self.value, x, self.err_minus, self.err_plus)
+        return [below, 1.0 - below]
 
     def _numbers(self) -> str:
         value, lower, upper = (_digits(x, 4) for x in (self.value, self.lower, self.upper))
@@ -200,6 +196,27 @@ class Measurement(ABC):
         raise InputError(
             f"{self.name}: {rule}, got {self._numbers()} [{self.unit}]; remedy: correct the measurement"
         )
+
+
+def two_piece_below(value: float, truth: Array, err_minus: Any, err_plus: Any) -> Array:
+    """Return how probable it is that a measurement falls below a value.
+
+    A measurement lies below the truth with the weight of the error above it, and the other way round.
+
+    Parameters
+    ----------
+    value : float
+        The value.
+    truth : array
+        What is measured.
+    err_minus, err_plus : float or array that broadcasts
+        One-sigma errors below and above the measured value.
+    """
+    total = err_minus + err_plus
+    beyond = 2.0 * err_plus / total * ndtr((value - truth) / err_plus)
+    short = 2.0 * err_minus / total * ndtr((truth - value) / err_minus)
+    below: Array = np.where(truth > value, beyond, 1.0 - short)
+    return below
 
 
 def _digits(value: float, digits: int) -> str:

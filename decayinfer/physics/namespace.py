@@ -9,7 +9,7 @@ from typing import Any
 
 import numpy as np
 
-__all__ = ["Value", "namespace"]
+__all__ = ["Value", "namespace", "softplus"]
 
 #: A float, a NumPy array or a PyTensor variable; formulas return the kind they are given.
 type Value = Any
@@ -37,3 +37,8 @@ def namespace(*values: Value) -> Any:
     if any(type(value).__module__.startswith("pytensor.") for value in values):
         return import_module("pytensor.tensor")
     return np
+
+
+def softplus(xp: Any, z: Value) -> Value:
+    """Return ln(1 + e^z) without overflow; xp is the module from `namespace`."""
+    return xp.maximum(z, 0.0) + xp.log1p(xp.exp(-xp.abs(z)))

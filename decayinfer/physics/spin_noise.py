@@ -15,7 +15,7 @@ import numpy as np
 
 from decayinfer.physics.namespace import Value
 
-__all__ = ["NoiseScale", "noise_scale"]
+__all__ = ["NoiseScale", "known_scale", "noise_scale"]
 
 _INTERCEPT, _INTERCEPT_ERR = -26.35, 0.11
 _SLOPE, _SLOPE_ERR = 0.97, 0.13
@@ -51,3 +51,20 @@ def noise_scale(nu: Value, nudot: Value) -> NoiseScale:
         _SCATTER**2 - _NORMAL_SD**2 + _INTERCEPT_ERR**2 + (_SLOPE_ERR * x) ** 2 + (_NU_SLOPE_ERR * y) ** 2
     )
     return NoiseScale(mean, np.sqrt(variance))
+
+
+def known_scale(nu: Value, nudot: Value, own: float, own_sd: float, usual_sd: float) -> NoiseScale:
+    """Return an object's own estimate of the scale where it has one, and that of `noise_scale` where it has none.
+
+    Parameters
+    ----------
+    nu, nudot : float or array
+        As in `noise_scale`.
+    own, own_sd : float
+        log10 of the object's own scale [Hz/s^2] and its error; nan where unknown.
+    usual_sd : float
+        Error of an own estimate that comes without one.
+    """
+    if not np.isfinite(own):
+        return noise_scale(nu, nudot)
+    return NoiseScale(own, own_sd if np.isfinite(own_sd) else usual_sd)

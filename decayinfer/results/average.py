@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from decayinfer.inference.outcome import ChannelFit, ObjectFit, Status
 
-__all__ = ["Probabilities", "channel_probabilities", "mix_draws"]
+__all__ = ["Probabilities", "channel_probabilities", "mean_evidence", "mix_draws"]
 
 type _Floats = NDArray[np.float64]
 
@@ -104,6 +104,32 @@ def channel_probabilities(fit: ObjectFit, prior_odds: Mapping[str, float] | None
         values=np.where(usable, _normalised(weight * evidence), np.nan),
         ln_evidence_err=np.array([f.ln_evidence_err for f in fit.fits]),
     )
+
+
+def mean_evidence(ln_evidence: _Floats, errors: _Floats, weights: _Floats) -> tuple[float, float]:
+    """Return ln of the weighted mean of evidences, and its standard error.
+
+    Parameters
+    ----------
+    ln_evidence, errors : (n,) ndarray
+        ln evidences, minus infinity where the index is out of reach, and their standard errors.
+    weights : (n,) ndarray
+        Positive, not necessarily normalised.
+
+    Returns
+    -------
+    tuple of float
+        nan without any evidence.
+    """
+    if not ln_evidence.size:
+        return np.nan, np.nan
+    ln_terms = np.log(weights / weights.sum()) + ln_evidence
+    top = ln_terms.max()
+    if not np.isfinite(top):
+        return -np.inf, 0.0
+    terms = np.exp(ln_terms - top)
+    err = np.hypot.reduce(terms / terms.sum() * np.nan_to_num(errors))
+    return float(top + np.log(terms.sum())), float(err)
 
 
 def mix_draws(draws: Sequence[_Floats], weights: _Floats, *, seed: int, name: str) -> _Floats:

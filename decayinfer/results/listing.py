@@ -14,7 +14,8 @@ __all__ = ["CHECK_HEADER", "HEADER", "check_listing", "flag_legend", "index_text
 
 #: Column heads of `listing`.
 HEADER = (
-    "object", "n", "tau_c", "most probable channel", "mass 90 % [Msun]", "prior", "phonon time 90 %", "flags",
+    "object", "n", "tau_c", "most probable channel", "any decay", "mass 90 % [Msun]", "prior", "phonon time 90 %",
+    "flags",
 )  # fmt: skip
 
 #: Column heads of `check_listing`.
@@ -91,6 +92,7 @@ def _row(row: dict[Any, Any]) -> tuple[str, ...]:
         index_text(row["braking_index"], row["err_minus"], row["err_plus"], row["limit"]),
         time_text(row["characteristic_age"]),
         best,
+        f"{row['probability_any_decay']:.2f}" if np.isfinite(row["probability_any_decay"]) else "-",
         _range(row["mass_q05"], row["mass_q95"]),
         _range(row["mass_prior_q05"], row["mass_prior_q95"]),
         time_text(row["phonon_time_q05"], row["phonon_time_q95"]),

@@ -14,7 +14,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from decayinfer.inference.outcome import ObjectFit, Status
-from decayinfer.results.average import Probabilities, mix_draws
+from decayinfer.results.average import Probabilities, mean_evidence, mix_draws
 
 __all__ = ["MassOf", "Preference", "best_scenario", "mass_of", "preferences", "scenario_rows"]
 
@@ -168,15 +168,8 @@ def _quantiles(label: str, draws: NDArray[np.float64]) -> Row:
 def _evidence(within: Probabilities) -> tuple[float, float]:
     """Return ln of the mean evidence over the channels of one scenario, by their prior odds, and its error."""
     used = within.prior > 0.0
-    if not used.any():
-        return np.nan, np.nan
-    ln_terms = np.log(within.prior[used]) + np.array([fit.ln_evidence for fit in within.fits])[used]
-    top = ln_terms.max()
-    if not np.isfinite(top):
-        return -np.inf, 0.0
-    terms = np.exp(ln_terms - top)
-    errors = np.nan_to_num(within.ln_evidence_err[used])
-    return float(top + np.log(terms.sum())), float(np.hypot.reduce(terms / terms.sum() * errors))
+    ln_evidence = np.array([fit.ln_evidence for fit in within.fits])
+    return mean_evidence(ln_evidence[used], within.ln_evidence_err[used], within.prior[used])
 
 
 def _ratio(difference: float, draws: NDArray[np.float64]) -> float:

@@ -9,7 +9,7 @@ import numpy as np
 from decayinfer.channels.registry import load_channel
 from decayinfer.inference.outcome import ChannelFit, ObjectFit, Status
 from decayinfer.inference.variants import PRIOR_SETTINGS
-from decayinfer.results.average import Probabilities, channel_probabilities
+from decayinfer.results.average import Probabilities, channel_probabilities, mean_evidence
 
 __all__ = ["ANY_DECAY", "DEFAULT", "Trial", "average_evidence", "sensitivity_rows", "trials"]
 
@@ -93,20 +93,11 @@ def average_evidence(runs: list[ChannelFit], weights: Mapping[str, float]) -> tu
     Failed runs are left out; nan when nothing is left.
     """
     usable = [run for run in runs if run.status is not Status.FAILED and not np.isnan(run.ln_evidence)]
-    if not usable:
-        return np.nan, np.nan
-    weight = np.array([weights[run.scenario] for run in usable])
-    ln_terms = np.log(weight / weight.sum()) + np.array([run.ln_evidence for run in usable])
-    top = ln_terms.max()
-    if not np.isfinite(top):
-        return -np.inf, 0.0
-    terms = np.exp(ln_terms - top)
-    errors = np.array([run.ln_evidence_err for run in usable])
-    shares = terms / terms.sum()
-    err = float(
-        np.sqrt(np.sum(np.where(shares > 0.0, shares * np.where(shares > 0.0, errors, 0.0), 0.0) ** 2))
+    return mean_evidence(
+        np.array([run.ln_evidence for run in usable]),
+        np.array([run.ln_evidence_err for run in usable]),
+        np.array([weights[run.scenario] for run in usable]),
     )
-    return float(top + np.log(terms.sum())), err
 
 
 def _varied(fit: ObjectFit, name: str) -> ObjectFit:

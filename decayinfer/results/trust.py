@@ -2,7 +2,8 @@
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.special import ndtr
+
+from decayinfer.measurements.base import two_piece_below
 
 __all__ = ["information", "predictive_tail"]
 
@@ -56,13 +57,10 @@ def predictive_tail(
         return np.nan
     levels: _Floats = (np.arange(20.0) + 0.5) / 20.0
     factors = np.exp(scatter_sd * _half_normal(levels))
-    gap = (observed - indices)[:, None]
-    # a measurement above the index is judged by its lower error; the halves weigh as their widths
-    share = 2.0 / (err_minus + err_plus)
-    beyond = share * err_minus * ndtr(-gap / (err_minus * factors))
-    short = 1.0 - share * err_plus * ndtr(gap / (err_plus * factors))
-    above = float(np.mean(np.where(gap > 0.0, beyond, short)))
-    return 2.0 * min(above, 1.0 - above)
+    below = float(
+        np.mean(two_piece_below(observed, indices[:, None], err_minus * factors, err_plus * factors))
+    )
+    return 2.0 * min(below, 1.0 - below)
 
 
 def _half_normal(levels: _Floats) -> _Floats:

@@ -189,11 +189,11 @@ def _assumption_clause(made: Sequence[Trial]) -> str:
     if not made or not np.isfinite(base := made[0].decay()[0]):
         return ""
     turning = [
-        f"{trial.name}{' priors' if trial.kind == 'priors' else ''} ({p:.2f})"
+        f"{trial.name}{' priors' if trial.kind == 'priors' else ''}: {p:.2f}"
         for trial in made
         if trial.kind != "reading" and np.isfinite(p := trial.decay()[0]) and (p >= 0.5) != (base >= 0.5)
     ]
-    return f"the majority for or against decay turns with {', '.join(turning)}" if turning else ""
+    return f"which side of one half decay is on changes ({', '.join(turning)})" if turning else ""
 
 
 def _odds(ratio: float) -> str:

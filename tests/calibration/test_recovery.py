@@ -1,22 +1,12 @@
 """The arithmetic of tests/studies/recovery.py."""
 
-import importlib.util
-import sys
-from pathlib import Path
-
 import numpy as np
 import pytest
 
-STUDIES = Path(__file__).parents[1] / "studies"
-
 
 @pytest.fixture(scope="module")
-def recovery():
-    spec = importlib.util.spec_from_file_location("recovery", STUDIES / "recovery.py")
-    module = importlib.util.module_from_spec(spec)
-    sys.modules["recovery"] = module
-    spec.loader.exec_module(module)
-    return module
+def recovery(study):
+    return study("recovery")
 
 
 def test_probabilities_sum_to_one_and_leave_out_what_failed(recovery):

@@ -23,26 +23,6 @@ CHANNELS = channel_names(rivals=False)
 SCENARIOS = ("candle", "slow-candle")
 SHORT = FitSettings(draws=500, tune=300)
 
-OBJECTS = {
-    "typical": {},
-    "index of three": {"braking_index": 3.0},
-    "barely above three": {"braking_index": 3.0 + 1e-9},
-    "huge error": {"braking_index_err_minus": 1e6, "braking_index_err_plus": 1e6},
-    "tiny error": {"braking_index_err_minus": 1e-6, "braking_index_err_plus": 1e-6},
-    "one-sided": {"braking_index_err_minus": 0.01, "braking_index_err_plus": 30.0},
-    "limit": {"braking_index": np.nan, "braking_index_limit": 15.0},
-    "limit of three": {"braking_index": np.nan, "braking_index_limit": 3.0},
-    "limit without error": {
-        "braking_index": np.nan, "braking_index_limit": 50.0,
-        "braking_index_err_minus": np.nan, "braking_index_err_plus": np.nan,
-    },
-    "huge index": {"braking_index": 1e5, "braking_index_err_minus": 1e4, "braking_index_err_plus": 1e4},
-    "newborn": {"period": 0.03, "period_derivative": 4e-13},
-    "older than the scenarios": {"period": 2.0, "period_derivative": 1e-16},
-    "millisecond": {"period": 0.005, "period_derivative": 1e-20},
-    "magnetar": {"period": 8.0, "period_derivative": 1e-10},
-}  # fmt: skip
-
 
 def finite_somewhere(numbers):
     rng = np.random.default_rng(1)
@@ -50,12 +30,11 @@ def finite_somewhere(numbers):
     return np.isfinite(evaluate(start[None], numbers).ln_density(numbers)[0]), start
 
 
-@pytest.mark.parametrize("kind", OBJECTS)
 @pytest.mark.parametrize("channel", CHANNELS)
-def test_the_sampler_starts_at_a_finite_density(tools, channel, kind):
+def test_the_sampler_starts_at_a_finite_density(tools, channel, odd):
     """Whatever the object, with and without n; and the parameters there are numbers in their ranges."""
     for scenario in SCENARIOS:
-        numbers = tools.problem(channel, scenario, **OBJECTS[kind])
+        numbers = tools.problem(channel, scenario, **odd)
         for used in (numbers, numbers.without_index()):
             finite, start = finite_somewhere(used)
             assert finite
@@ -139,10 +118,9 @@ def test_an_index_far_below_three_is_unreachable(tools, channel, scenario):
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize("kind", OBJECTS)
-def test_odd_input_ends_in_a_status(tools, kind):
+def test_odd_input_ends_in_a_status(tools, odd):
     """No exception whatever the object, and a status with its reason."""
-    star = replace(tools.WREN, **OBJECTS[kind])
+    star = replace(tools.WREN, **odd)
     for channel in ("constant", "phonon", "impurity+hall"):
         fit = fit_channel(star, channel, "candle", FitSettings())
         assert fit.status in Status

@@ -103,7 +103,7 @@ def test_fit_prints_a_row_per_object(run, table, engine):
     result = run("fit", table(GOOD), "--out", "run", *SHORT)
     assert result.exit_code == 0
     row = next(line for line in result.stdout.splitlines() if line.strip().startswith("A "))
-    assert one_line(row).startswith("A 20.0 ± 1.0 63.4 kyr phonon 1.00 1.1")
+    assert one_line(row).startswith("A 20.0 ± 1.0 63.4 kyr phonon 1.00 1.00 1.1")
     assert "2 posterior runs made, 0 found, 1 unreachable, 0 failed" in result.stdout
     assert "results in run" in result.stdout
     assert result.stderr.splitlines()[-1] == "2 of 2 posterior runs"

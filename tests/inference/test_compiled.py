@@ -62,3 +62,15 @@ def test_one_engine_and_at_most_one_derivation_in_a_process():
     assert len(compiled.derivations()) <= 1
     # a second callback is loaded from the disk
     assert compiled.density_callback().cache_hits == 1
+
+
+@pytest.mark.slow  # derives the density in this process
+def test_interpreted_and_compiled_density_agree(tools, own_scenarios):
+    """The function behind the callback, called from Python, is the density that is sampled."""
+    from decayinfer.inference.density import evaluate
+
+    problem = tools.problem("impurity+phonon+hall")
+    point = tools.typical_points(problem, 1, np.random.default_rng(2))[0]
+    value, gradient = compiled._log_density(point, compiled.flat_numbers(problem))
+    assert value == pytest.approx(evaluate(point[None], problem).ln_density(problem)[0], rel=1e-9)
+    assert np.shape(gradient) == point.shape

@@ -24,6 +24,7 @@ def test_a_row_per_object(tmp_path, engine, catalogue, settings):
     # ln evidences in two scenarios: phonon -2.547, -2.039; phonon+hall -4.477, -5.175
     assert first["most probable channel"] == "phonon 0.92"
     assert second["most probable channel"] == "none"
+    assert second["any decay"] == "-"
     assert second["flags"] == "no-channel"
     assert second["mass 90 % [Msun]"] == second["prior"] == second["phonon time 90 %"] == "-"
     assert flag_legend(run)["no-channel"] == FLAGS["no-channel"].meaning

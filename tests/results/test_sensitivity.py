@@ -86,4 +86,4 @@ def test_a_scenario_that_turns_the_majority_is_named():
         run("spin-noise", "warm", -1.5),
     )  # fmt: skip
     said = words(ObjectFit("Teal", fits, WEIGHTS))
-    assert "the majority for or against decay turns with without cool (0.00)" in said
+    assert "which side of one half decay is on changes (without cool: 0.00)" in said

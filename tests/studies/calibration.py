@@ -3,10 +3,7 @@
     python tests/studies/calibration.py --channel phonon --simulations 200
 
 Parameters are drawn from the full prior, evolved forward to P, Pdot and n, and measured; the posterior of each
-invented object is
-sampled, and the rank of each true value among its draws must be uniform. Objects are selected by P, tau_c and the
-measured n alone: those are data, so selection leaves the ranks uniform. The error of n is drawn
-without looking at n, since an error that grew with the true index would itself be a measurement.
+invented object (inventing.py) is sampled, and the rank of each true value among its draws must be uniform.
 
 The negative control fits some of the same objects with a wrong prior (heavier stars), and must fail the same test.
 """
@@ -18,24 +15,24 @@ from pathlib import Path
 import numpy as np
 from scipy import stats
 
-from decayinfer.catalog.pulsar import Pulsar
 from decayinfer.channels.registry import load_channel
 from decayinfer.cooling.registry import load_scenario, scenario_names
 from decayinfer.inference.coordinates import ln_index_excess
 from decayinfer.inference.density import evaluate
 from decayinfer.inference.explore import explore
-from decayinfer.inference.forward import draw_prior, evolve
-from decayinfer.inference.measurement import sample_index
 from decayinfer.inference.priors import Priors
 from decayinfer.inference.problem import make_problem
 from decayinfer.inference.seeds import named_seeds
 from decayinfer.inference.settings import FitSettings
 from decayinfer.physics.torque import characteristic_age
 
-#: Selection on data [s], [yr]. In older stars the phonon rate is frozen out over many e-folds: fits take ten times as
-#: long and one in twenty does not converge, which its status says.
-PERIODS, AGES, INDICES = (0.01, 10.0), (1e3, 3e6), (-20.0, 300.0)
-ERRORS = (0.1, 3.0)  # log-uniform error of n, whatever n is
+sys.path.insert(0, str(Path(__file__).parent))
+import recording
+from inventing import Selection, invent
+
+#: In stars older than this the phonon rate is frozen out over many e-folds: fits take ten times as long and one in
+#: twenty does not converge, which its status says.
+SELECTION = Selection(periods=(0.01, 10.0), ages=(1e3, 3e6), indices=(-20.0, 300.0), errors=(0.1, 3.0))
 RANKS = 50  # possible ranks: 49 thinned draws
 TAIL = 1e-3  # tail probability at which a rank test fails
 WRONG = Priors(mass_mean=1.55)
@@ -44,27 +41,8 @@ CONTROLS = 60  # simulations of the negative control
 
 def sample_objects(channel, scenario, count, seed):
     """Invented objects and their truths: logs of the physical parameters, by name."""
-    rng = np.random.default_rng(seed)
-    priors, found = Priors(), []
-    while len(found) < count:
-        draws = draw_prior(2000, priors, rng)
-        today = evolve(draws, channel, scenario, priors)
-        error = np.exp(rng.uniform(*np.log(ERRORS), size=2000))
-        with np.errstate(divide="ignore", over="ignore", invalid="ignore"):
-            measured = sample_index(today.braking_index, error, error, priors.scatter_sd, rng)
-            age = characteristic_age(today.period, today.period_derivative)
-        kept = inside(today.period, PERIODS) & inside(age, AGES) & inside(measured, INDICES)
-        for i in np.flatnonzero(kept):
-            star = Pulsar(
-                name=f"object {len(found)}", period=today.period[i], period_derivative=today.period_derivative[i],
-                braking_index=measured[i], braking_index_err_minus=error[i], braking_index_err_plus=error[i],
-            )  # fmt: skip
-            found.append((star, truths(draws, today, channel, i)))
-    return found[:count]
-
-
-def inside(values, limits):
-    return (values > limits[0]) & (values < limits[1])
+    found, _ = invent(channel, scenario, count, np.random.default_rng(seed), SELECTION)
+    return [(star, truths(draws, today, channel, i)) for star, (draws, today, i) in found]
 
 
 def truths(draws, today, channel, i):
@@ -127,22 +105,12 @@ def smallest(tests):
     return min(p for pair in tests.values() for p in pair.values())
 
 
-def main():
-    parser = argparse.ArgumentParser(description=__doc__.splitlines()[0])
-    parser.add_argument("--channel", action="append", required=True)
-    parser.add_argument("--simulations", type=int, default=200)
-    parser.add_argument("--seed", type=int, default=2026)
-    asked = parser.parse_args()
-    sys.path.insert(0, str(Path(__file__).parent))
-    import recording
-
-    for channel in asked.channel:
+def run(calibrate, channels, wrong, *, simulations, seed, ages):
+    """Calibrate channels under the right and the wrong prior, print what came out and record it."""
+    for channel in channels:
         rows = []
-        for label, priors, count in (
-            ("right prior", None, asked.simulations),
-            ("wrong prior", WRONG, CONTROLS),
-        ):
-            ranks, coverage, converged = calibrate(channel, count, asked.seed, priors=priors)
+        for label, priors, count in (("right prior", None, simulations), ("wrong prior", wrong, CONTROLS)):
+            ranks, coverage, converged = calibrate(channel, count, seed, priors=priors)
             tests = rank_tests(ranks)
             rows += [
                 {"prior": label, "parameter": name, **tests[name], "coverage_50": coverage[name][0],
@@ -150,23 +118,49 @@ def main():
                 for name in ranks
             ]  # fmt: skip
             print(
-                channel,
-                label,
-                "smallest tail probability",
-                smallest(tests),
-                "converged",
-                converged,
+                f"{channel} {label}: smallest tail probability {smallest(tests):.2g}, converged {converged}",
+                {name: round(min(pair.values()), 4) for name, pair in tests.items()},
                 flush=True,
             )
         recording.write(
             f"calibration-{channel}",
             rows,
-            simulations=asked.simulations,
-            seed=asked.seed,
+            simulations=simulations,
+            seed=seed,
             ranks=RANKS,
             tail=TAIL,
-            ages=AGES,
+            ages=ages,
         )
+
+
+def hold(record):
+    """Assert what a recorded run must show: uniform ranks and coverage, and a negative control that fails."""
+    count = record["settings"]["simulations"]
+    assert count >= 200
+    ranks = {
+        label: {row["parameter"]: row["ranks"] for row in record["rows"] if row["prior"] == label}
+        for label in ("right prior", "wrong prior")
+    }
+    assert smallest(rank_tests(ranks["right prior"])) > TAIL
+    assert smallest(rank_tests(ranks["wrong prior"])) < TAIL
+    for row in record["rows"]:
+        if row["prior"] == "right prior":
+            assert row["converged"] >= 0.95 * count
+            assert abs(row["coverage_90"] - 0.9) < 3.3 * (0.9 * 0.1 / count) ** 0.5 + 0.02
+
+
+def arguments(description, **channel):
+    """Read the command line of a calibration."""
+    parser = argparse.ArgumentParser(description=description)
+    parser.add_argument("--channel", action="append", **channel)
+    parser.add_argument("--simulations", type=int, default=200)
+    parser.add_argument("--seed", type=int, default=2026)
+    return parser.parse_args()
+
+
+def main():
+    asked = arguments(__doc__.splitlines()[0], required=True)
+    run(calibrate, asked.channel, WRONG, simulations=asked.simulations, seed=asked.seed, ages=SELECTION.ages)
 
 
 if __name__ == "__main__":

@@ -3,8 +3,7 @@
     python tests/studies/recovery.py noise --jobs 2       200 invented objects of nothing but spin noise
     python tests/studies/recovery.py channels --jobs 2    40 invented objects from each channel in turn
 
-Objects are drawn forward from the priors of a channel, measured with errors that do not depend on n, and selected by P,
-tau_c and the measured n alone. Every channel is fitted under the scenario that they were drawn with.
+Objects are invented by inventing.py. Every channel is fitted under the scenario that they were drawn with.
 
 The first study takes the probabilities that a user sees, from p(n | P, Pdot, channel). In the second the objects of
 each channel are equally many, so P and Pdot tell channels apart too, and so does how often a channel passes the
@@ -14,61 +13,32 @@ selection: probabilities are then those of p(n, P, Pdot | channel) over the shar
 import argparse
 import sys
 from concurrent.futures import ProcessPoolExecutor
-from functools import partial
+from dataclasses import replace
 from multiprocessing import get_context
 from pathlib import Path
 
 import numpy as np
 
-from decayinfer.catalog.pulsar import Pulsar
 from decayinfer.channels.registry import channel_names, load_channel
-from decayinfer.channels.rival import Rival
 from decayinfer.cooling.registry import load_scenario
 from decayinfer.inference.fit import fit_object
-from decayinfer.inference.forward import draw_prior, evolve
-from decayinfer.inference.measurement import sample_index
-from decayinfer.inference.priors import Priors
-from decayinfer.inference.rival_forward import evolve_rival
 from decayinfer.inference.settings import FitSettings
-from decayinfer.physics.torque import characteristic_age
+
+sys.path.insert(0, str(Path(__file__).parent))
+import recording
+from inventing import Selection, invent
 
 SCENARIO = "bsk24-protons-iron"
-PERIODS, AGES, INDICES = (0.02, 5.0), (5e3, 3e6), (-300.0, 300.0)  # selection on data [s], [yr]
-ERRORS = (0.3, 3.0)  # log-uniform error of n, whatever n is
+SELECTION = Selection(periods=(0.02, 5.0), ages=(5e3, 3e6), indices=(-300.0, 300.0), errors=(0.3, 3.0))
 BATCH = 20_000
 SETTINGS = FitSettings(draws=500, tune=300, cooling=(SCENARIO,))
 
 
-def invent(channel_name, count, seed):
+def objects_of(name, count, seed):
     """Objects of one channel, and the share of its stars that are selected."""
-    rng = np.random.default_rng([seed, *channel_name.encode()])
-    channel, scenario, priors = load_channel(channel_name), load_scenario(SCENARIO), Priors()
-    found, drawn = [], 0
-    while len(found) < count:
-        draws = draw_prior(BATCH, priors, rng)
-        if isinstance(channel, Rival):
-            today = evolve_rival(draws, channel, scenario, priors, rng)
-        else:
-            today = evolve(draws, channel, scenario, priors)
-        error = np.exp(rng.uniform(*np.log(ERRORS), size=BATCH))
-        with np.errstate(all="ignore"):
-            measured = sample_index(today.braking_index, error, error, priors.scatter_sd, rng)
-            age = characteristic_age(today.period, today.period_derivative)
-            kept = inside(today.period, PERIODS) & inside(age, AGES) & inside(measured, INDICES)
-        for i in np.flatnonzero(kept):
-            found.append(
-                Pulsar(
-                    name=f"{channel_name} {len(found)}", period=float(today.period[i]),
-                    period_derivative=float(today.period_derivative[i]), braking_index=float(measured[i]),
-                    braking_index_err_minus=float(error[i]), braking_index_err_plus=float(error[i]),
-                )
-            )  # fmt: skip
-        drawn += BATCH
-    return found[:count], len(found) / drawn
-
-
-def inside(values, limits):
-    return (values > limits[0]) & (values < limits[1])
+    rng = np.random.default_rng([seed, *name.encode()])
+    found, share = invent(load_channel(name), load_scenario(SCENARIO), count, rng, SELECTION, batch=BATCH)
+    return [replace(star, name=f"{name} {i}") for i, (star, _) in enumerate(found)], share
 
 
 def classify(pulsar, truth, settings=SETTINGS):
@@ -98,7 +68,7 @@ def decay_probability(row):
 
 def work(items, jobs):
     with ProcessPoolExecutor(jobs, mp_context=get_context("spawn")) as pool:
-        return list(pool.map(partial(_one), items, chunksize=1))
+        return list(pool.map(_one, items, chunksize=1))
 
 
 def _one(item):
@@ -112,12 +82,9 @@ def main():
     parser.add_argument("--jobs", type=int, default=1)
     parser.add_argument("--seed", type=int, default=2026)
     asked = parser.parse_args()
-    sys.path.insert(0, str(Path(__file__).parent))
-    import recording
-
     count = asked.objects or {"noise": 200, "channels": 40}[asked.study]
     names = ("spin-noise",) if asked.study == "noise" else channel_names()
-    invented = {name: invent(name, count, asked.seed) for name in names}
+    invented = {name: objects_of(name, count, asked.seed) for name in names}
     rows = work([(star, name) for name in names for star in invented[name][0]], asked.jobs)
     recording.write(
         f"recovery-{asked.study}", rows, objects=count, seed=asked.seed, scenario=SCENARIO, draws=SETTINGS.draws,
